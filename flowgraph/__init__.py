@@ -1,0 +1,1 @@
+"""flowgraph: a block-diagram compiler for people who design signal chains."""

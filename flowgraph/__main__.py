@@ -1,0 +1,7 @@
+"""`python -m flowgraph`."""
+
+import sys
+
+from flowgraph.cli.main import main
+
+sys.exit(main())

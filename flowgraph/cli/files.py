@@ -1,0 +1,142 @@
+"""The diagrams a command works on: FILE, FILE:NAME or -, with values tried by --with."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from collections.abc import Iterable
+from dataclasses import replace
+from pathlib import Path
+from typing import Literal, NoReturn
+
+from flowgraph.cli.stop import Stop
+from flowgraph.diagram.claim import DiagramIntent
+from flowgraph.diagram.diagram import Coefficient, Diagram
+from flowgraph.source.diagnostic import Diagnostic
+from flowgraph.source.render import render
+from flowgraph.text.load import Loaded, load
+from flowgraph.text.read_value import read_value
+
+FILE_HELP = "a diagram file, FILE:NAME for one diagram of it, - for standard input"
+
+Tolerance = Literal["nothing", "claims", "loops"]
+"""Which findings a command goes on after: none, those on claims alone, or delay-free loops as well."""
+
+
+def add_file_arguments(parser: argparse.ArgumentParser) -> None:
+    """Several FILEs, and the options that every command on diagrams has."""
+    parser.add_argument("files", metavar="FILE", nargs="+", help=FILE_HELP)
+    _add_options(parser)
+
+
+def add_file_argument(parser: argparse.ArgumentParser) -> None:
+    """One FILE, for commands that work on one diagram."""
+    parser.add_argument("files", metavar="FILE", nargs=1, help=FILE_HELP)
+    _add_options(parser)
+
+
+def _add_options(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--library", metavar="DIR", help="a folder that includes may also come from")
+    parser.add_argument(
+        "--with", dest="values", metavar="NAME=VALUE", action="append", default=[], help="try a value without editing"
+    )
+    parser.add_argument("--json", action="store_true", help="one JSON object instead of text")
+
+
+def chosen_diagrams(
+    options: argparse.Namespace, tolerance: Tolerance = "nothing", *, every: bool = False
+) -> list[Diagram]:
+    """The diagrams named on the command line, at the values of --with.
+
+    Of a FILE these are the diagrams that no other uses (all of them with `every`). Findings are
+    printed to standard error; those not tolerated end the command with code 1, an unreadable file
+    or an unknown name with code 2.
+    """
+    diagrams: list[Diagram] = []
+    for argument in options.files:
+        path, name = split_name(argument)
+        loaded = load(path, library=options.library)
+        tell(loaded.findings)
+        if any(_stops(found, tolerance) for found in loaded.findings):
+            raise Stop(1)
+        if name is not None:
+            diagrams.append(_named(loaded, name, path))
+        else:
+            diagrams.extend(loaded.diagrams if every else _used_by_none(loaded))
+    if not diagrams:
+        refuse(f"{', '.join(options.files)}: there is no diagram here")
+    return [_with_values(diagram, options.values) for diagram in diagrams]
+
+
+def one_diagram(options: argparse.Namespace, tolerance: Tolerance = "nothing") -> Diagram:
+    """The one diagram a command works on; if there are several, they are named and the command ends."""
+    chosen = chosen_diagrams(options, tolerance)
+    if len(chosen) != 1:
+        names = ", ".join(diagram.name for diagram in chosen)
+        refuse(f"there are {len(chosen)} diagrams here, name one as FILE:NAME ({names})")
+    return chosen[0]
+
+
+def split_name(argument: str) -> tuple[str, str | None]:
+    """FILE:NAME as a path and a name; a path alone has no name. A colon inside the path is left alone."""
+    path, colon, name = argument.rpartition(":")
+    if colon and path and name.isidentifier() and not Path(argument).exists():
+        return path, name
+    return argument, None
+
+
+def tell(findings: Iterable[Diagnostic]) -> None:
+    """Prints findings to standard error."""
+    for found in findings:
+        print(render(found), file=sys.stderr)
+
+
+def refuse(message: str) -> NoReturn:
+    """Says what cannot be used and ends the command with code 2."""
+    print(f"error: {message}", file=sys.stderr)
+    raise Stop(2)
+
+
+def _stops(found: Diagnostic, tolerance: Tolerance) -> bool:
+    """Whether a finding ends a command: warnings never do."""
+    if found.severity == "warning":
+        return False
+    if tolerance == "nothing":
+        return True
+    return not (found.code.startswith("claim-") or (tolerance == "loops" and found.code == "delay-free-loop"))
+
+
+def _named(loaded: Loaded, name: str, path: str) -> Diagram:
+    for diagram in loaded.diagrams:
+        if diagram.name == name:
+            return diagram
+    known = ", ".join(diagram.name for diagram in loaded.diagrams) or "none"
+    refuse(f"{path}: there is no diagram {name} here (there are: {known})")
+
+
+def _used_by_none(loaded: Loaded) -> list[Diagram]:
+    """The diagrams that no other diagram uses, in elements or in a claim."""
+    used: set[str] = set()
+    for diagram in loaded.diagrams:
+        used.update(use.diagram.name for use in diagram.uses)
+        used.update(claim.other.name for claim in diagram.claims if isinstance(claim, DiagramIntent))
+    return [diagram for diagram in loaded.diagrams if diagram.name not in used]
+
+
+def _with_values(diagram: Diagram, values: list[str]) -> Diagram:
+    """The diagram with the values of --with NAME=VALUE in place of those of the file."""
+    if not values:
+        return diagram
+    coefficients = dict(diagram.coefficients)
+    for given in values:
+        name, equals, text = given.partition("=")
+        name = name.strip()
+        if not equals or name not in coefficients:
+            known = ", ".join(known for known in coefficients if "." not in known) or "none"
+            refuse(f"--with {given}: write NAME=VALUE, with a coefficient of {diagram.name} (there are: {known})")
+        try:
+            value = read_value(text)
+        except ValueError as error:
+            refuse(f"--with {given}: {error}")
+        coefficients[name] = Coefficient(name, value, coefficients[name].given, coefficients[name].span)
+    return replace(diagram, coefficients=coefficients)

@@ -1,0 +1,1 @@
+"""The diagram: its elements, the expressions on its wires, its claims, and what it computes."""

@@ -1,0 +1,200 @@
+"""The exact simulator: what a diagram computes, sample by sample, straight from its definition.
+
+It is the oracle that everything faster is held against, so it is plain. It runs over any ring:
+rationals, residues modulo a prime, polynomials in the coefficient names.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from fractions import Fraction
+from math import prod
+from typing import Protocol, Self, TypeVar
+
+from flowgraph.diagram.diagram import Diagram
+from flowgraph.diagram.elements import Adder, Delay, Gain, Input, Signal
+from flowgraph.diagram.expression import (
+    Expression,
+    Function,
+    Name,
+    Negative,
+    Number,
+    Pi,
+    Power,
+    Product,
+    Quotient,
+    Sum,
+    names_in,
+)
+from flowgraph.diagram.index import index, instant_order
+
+
+class Ring(Protocol):
+    """Values that can be added, subtracted and multiplied."""
+
+    def __add__(self, other: Self, /) -> Self: ...
+    def __sub__(self, other: Self, /) -> Self: ...
+    def __mul__(self, other: Self, /) -> Self: ...
+
+
+T = TypeVar("T", bound=Ring)
+
+
+def simulate(
+    diagram: Diagram,
+    coefficient: Callable[[Expression], T],
+    inputs: Mapping[str, Sequence[T]],
+    samples: int,
+    zero: T,
+    watch: Mapping[str, Signal] | None = None,
+) -> dict[str, list[T]]:
+    """The first `samples` values of every output port, and of each signal in `watch` under its key.
+
+    `coefficient` gives the value of a coefficient or of a starting content; each expression is
+    asked for once. An input that is not in `inputs`, or has ended, is `zero`. Tap k of a delay at
+    sample n is what the delay read at n - k, and before that its starting contents. Raises
+    ValueError where wires form a loop without a delay.
+    """
+    view = index(diagram)
+    order, loops = instant_order(view)
+    if loops:
+        raise ValueError("a loop without a delay: " + ", ".join(view.names[at] for at in loops[0]))
+    steps = [(view.names[at], _terms(diagram, view.names[at], coefficient)) for at in order]
+    lines = diagram.delays()
+    starts = {line.name: [coefficient(start) for start in line.starts] or [zero] * line.length for line in lines}
+    taken: dict[str, list[T]] = {line.name: [] for line in lines}
+    shown = {name: output.signal for name, output in diagram.outputs.items()} | dict(watch or {})
+    result: dict[str, list[T]] = {name: [] for name in shown}
+    now: dict[str, T] = {}
+
+    def value(signal: Signal, n: int) -> T:
+        if signal.tap == 0:
+            return now[signal.name]
+        past = n - signal.tap
+        return taken[signal.name][past] if past >= 0 else starts[signal.name][-past - 1]
+
+    for n in range(samples):
+        for name, terms in steps:
+            if terms is not None:
+                now[name] = _total([(negative, value(signal, n), factor) for negative, signal, factor in terms], zero)
+            elif name not in taken:
+                now[name] = inputs[name][n] if n < len(inputs.get(name, ())) else zero
+        for line in lines:
+            taken[line.name].append(value(line.signal, n))
+        for name, signal in shown.items():
+            result[name].append(value(signal, n))
+    return result
+
+
+def _terms(
+    diagram: Diagram, name: str, coefficient: Callable[[Expression], T]
+) -> list[tuple[bool, Signal, T | None]] | None:
+    """The signed, scaled signals whose sum an element is; None for inputs and delays."""
+    match diagram.elements[name]:
+        case Adder(terms=terms):
+            return [
+                (term.negative, term.signal, None if term.coefficient is None else coefficient(term.coefficient))
+                for term in terms
+            ]
+        case Gain(coefficient=factor, signal=signal):
+            return [(False, signal, coefficient(factor))]
+        case Input() | Delay():
+            return None
+
+
+def _total(terms: list[tuple[bool, T, T | None]], zero: T) -> T:
+    """The terms added from left to right."""
+    total: T | None = None
+    for negative, signal, factor in terms:
+        product = signal if factor is None else factor * signal
+        if total is None:
+            total = zero - product if negative else product
+        else:
+            total = total - product if negative else total + product
+    return zero if total is None else total
+
+
+class NoExactValueError(ValueError):
+    """An expression that has no rational value, and why."""
+
+
+class OpenCoefficientError(NoExactValueError):
+    """An expression that reads a coefficient without a value; `name` is that coefficient."""
+
+    def __init__(self, name: str) -> None:
+        super().__init__(f"the coefficient {name} is open: it has no value here")
+        self.name = name
+
+
+def exact_values(diagram: Diagram) -> Callable[[Expression], Fraction]:
+    """A function that gives the rational value of a coefficient expression with the file's values.
+
+    That function raises OpenCoefficientError where a coefficient has no value, and NoExactValueError where
+    the value is no rational number (sqrt, sin, pi ..), divides by zero or follows itself.
+    """
+    known: dict[str, Fraction] = {}
+
+    def value(expression: Expression) -> Fraction:
+        """Values the coefficients that `expression` follows, the deepest first, without recursion."""
+        waiting = sorted(names_in(expression), reverse=True)
+        opened: set[str] = set()
+        while waiting:
+            name = waiting[-1]
+            if name in known:
+                waiting.pop()
+                continue
+            found = diagram.coefficients.get(name)
+            if found is None or found.value is None:
+                raise OpenCoefficientError(name)
+            missing = [other for other in sorted(names_in(found.value)) if other not in known]
+            if missing and name in opened:
+                raise NoExactValueError(f"the coefficient {name} follows itself")
+            opened.add(name)
+            if missing:
+                waiting.extend(reversed(missing))
+            else:
+                known[waiting.pop()] = rational(found.value, known)
+        return rational(expression, known)
+
+    return value
+
+
+def rational(expression: Expression, known: Mapping[str, Fraction]) -> Fraction:
+    """The rational value of an expression whose names are in `known`. Raises NoExactValueError if it has none."""
+    match expression:
+        case Number(value):
+            return value
+        case Name(name) if name in known:
+            return known[name]
+        case Sum(terms):
+            return sum((rational(term, known) for term in terms), Fraction(0))
+        case Product(factors):
+            return prod((rational(factor, known) for factor in factors), start=Fraction(1))
+        case Negative(inner):
+            return -rational(inner, known)
+        case Quotient(upper, lower):
+            return rational(upper, known) / _not_zero(rational(lower, known))
+        case Power(base, exponent) if exponent.denominator == 1:
+            inside = rational(base, known)
+            return Fraction((inside if exponent >= 0 else _not_zero(inside)) ** exponent.numerator)
+        case _:
+            raise NoExactValueError(f"{_said(expression)} has no exact value as a fraction")
+
+
+def _not_zero(value: Fraction) -> Fraction:
+    if value == 0:
+        raise NoExactValueError("a coefficient divides by zero")
+    return value
+
+
+def _said(expression: Expression) -> str:
+    """What stands in the way of a rational value, in a word."""
+    match expression:
+        case Power(_, exponent):
+            return f"the power {exponent}"
+        case Name(name) | Function(name, _):
+            return name
+        case Pi():
+            return "pi"
+        case _:
+            return "a sample"

@@ -1,0 +1,76 @@
+"""Questions about the shape of a diagram: what reaches what, and its loops without a delay."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator, Sequence
+from itertools import islice
+
+from flowgraph.diagram.index import Index, instant_order, strong_components
+
+
+def spread(successors: Sequence[Sequence[int]], roots: Iterable[int]) -> list[bool]:
+    """Marks every number that can be reached from `roots`, themselves included.
+
+    With `readers` of an Index as successors that is what a signal reaches, with `reads` what it comes from.
+    """
+    marked = [False] * len(successors)
+    waiting = list(roots)
+    for root in waiting:
+        marked[root] = True
+    while waiting:
+        for following in successors[waiting.pop()]:
+            if not marked[following]:
+                marked[following] = True
+                waiting.append(following)
+    return marked
+
+
+def unread_ends(view: Index, roots: Iterable[int]) -> list[int]:
+    """Where signals end unread: of what `roots` do not come from, that which nothing else unread reads.
+
+    Of a group that only reads itself it is the first in the file. Told about these, the others follow.
+    """
+    reaches = spread(view.reads, roots)
+    unread = [at for at, alive in enumerate(reaches) if not alive]
+    place = {at: k for k, at in enumerate(unread)}
+    readers = [[place[reader] for reader in view.readers[at] if reader in place] for at in unread]
+    ends: list[int] = []
+    for group in strong_components(readers):
+        inside = set(group)
+        if all(reader in inside for member in group for reader in readers[member]):
+            ends.append(unread[group[0]])
+    return sorted(ends)
+
+
+def delay_free_loops(view: Index) -> Iterator[list[int]]:
+    """Every elementary loop of delay-free wires, each from its first element in the file, along the signal.
+
+    There may be very many; take as many as are wanted. Johnson 1975, through networkx.
+    """
+    _, groups = instant_order(view)
+    for group in sorted(groups):
+        if len(group) == 1:
+            yield group
+        else:
+            yield from _elementary(view, group)
+
+
+def _elementary(view: Index, group: list[int]) -> Iterator[list[int]]:
+    """The elementary loops inside one strongly connected group, the first in the file first."""
+    import networkx
+
+    inside = set(group)
+    graph = networkx.DiGraph()
+    graph.add_nodes_from(group)
+    graph.add_edges_from((source, at) for at in group for source in view.instant[at] if source in inside)
+    found = [_from_first(cycle) for cycle in islice(networkx.simple_cycles(graph), MOST_LOOPS)]
+    yield from sorted(found)
+
+
+MOST_LOOPS = 1000
+"""The most loops that are counted in one group."""
+
+
+def _from_first(cycle: list[int]) -> list[int]:
+    turn = cycle.index(min(cycle))
+    return cycle[turn:] + cycle[:turn]

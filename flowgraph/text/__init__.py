@@ -1,0 +1,1 @@
+"""From text to diagrams and back: reader, parser, elaboration, structural rules, printer."""

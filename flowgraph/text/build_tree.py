@@ -1,0 +1,284 @@
+"""The tree builder: Lark calls it for each rule it has read, and typed nodes come out at once."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TypeAlias
+
+from lark import Token, Transformer
+
+from flowgraph.text import syntax as s
+from flowgraph.text.exact import LEVELS, exact_number
+
+Limits: TypeAlias = tuple[s.Expr | None, s.Expr | None]
+Starts: TypeAlias = tuple[tuple[s.Expr, ...], bool]
+
+
+class MisplacedError(ValueError):
+    """Something the grammar takes and the language does not; `start` and `end` say where."""
+
+    def __init__(self, code: str, message: str, mend: str, start: int, end: int) -> None:
+        super().__init__(message)
+        self.code, self.message, self.mend, self.start, self.end = code, message, mend, start, end
+
+
+class TreeBuilder(Transformer[Token, s.Node]):
+    """One method a rule or terminal; `origin` is the offset of the line in its file."""
+
+    origin = 0
+
+    def NAME(self, token: Token) -> s.Word:  # noqa: N802
+        start = self.origin + (token.start_pos or 0)
+        return s.Word(str(token), start, start + len(token))
+
+    def STRING(self, token: Token) -> s.Word:  # noqa: N802
+        start = self.origin + (token.start_pos or 0)
+        return s.Word(str(token[1:-1]), start, start + len(token))
+
+    def _end(self, token: Token) -> int:
+        return self.origin + (token.start_pos or 0) + len(token)
+
+    # Expressions
+
+    def number(self, parts: tuple[Token, Token | None]) -> s.Figure:
+        figure, unit = parts
+        start = self.origin + (figure.start_pos or 0)
+        if unit is None:
+            return s.Figure(exact_number(str(figure)), "", start, start + len(figure))
+        return s.Figure(exact_number(str(figure), str(unit)), str(unit), start, self._end(unit))
+
+    def reference(self, parts: list[s.Word | s.At]) -> s.Reference:
+        name = parts[0]
+        assert isinstance(name, s.Word)
+        if len(parts) == 1:
+            return s.Reference(name.text, (), name.start, name.end)
+        inner = tuple(part.text if isinstance(part, s.Word) else part for part in parts[1:])
+        return s.Reference(name.text, inner, name.start, parts[-1].end)
+
+    def index(self, parts: tuple[s.Expr, Token]) -> s.At:
+        return s.At(parts[0], self._end(parts[1]))
+
+    def chain(self, parts: list[Token | s.Expr]) -> s.Expr:
+        """A run of factors and operators: products are grouped first, then added."""
+        terms: list[s.Signed] = []
+        factors: list[s.Factor] = []
+        negative = signed = divides = False
+        for part in parts:
+            if not isinstance(part, Token):
+                factors.append(s.Factor(divides, part))
+            elif part.type == "STAR":
+                divides = False
+            elif part.type == "SLASH":
+                divides = True
+            else:
+                if factors:
+                    terms.append(s.Signed(negative, _group(factors)))
+                    factors = []
+                divides = False
+                negative = part.type == "MINUS"
+                signed = True
+        last = _group(factors)
+        if not signed:
+            return last
+        terms.append(s.Signed(negative, last))
+        first = parts[0]
+        start = self.origin + (first.start_pos or 0) if isinstance(first, Token) else first.start
+        return s.Total(tuple(terms), start, last.end)
+
+    def power(self, parts: tuple[s.Expr, Token | None, s.Expr]) -> s.Raised:
+        base, sign, exponent = parts
+        height = exponent.height + 1 if isinstance(exponent, s.Raised) else 1
+        if height > LEVELS:
+            raise MisplacedError(
+                "too-deep", f"more than {LEVELS} powers on top of each other", "", base.start, exponent.end
+            )
+        if sign is not None:
+            start = self.origin + (sign.start_pos or 0)
+            exponent = s.Total((s.Signed(sign.type == "MINUS", exponent),), start, exponent.end)
+        return s.Raised(base, exponent, height, base.start, exponent.end)
+
+    def bracket(self, parts: tuple[Token, s.Expr, Token]) -> s.Bracket:
+        return s.Bracket(parts[1], self.origin + (parts[0].start_pos or 0), self._end(parts[2]))
+
+    def call(self, parts: tuple[Token, s.Expr, Token]) -> s.Call:
+        return s.Call(str(parts[0]), parts[1], self.origin + (parts[0].start_pos or 0), self._end(parts[2]))
+
+    def fold(self, parts: tuple[Token, s.Word, s.Expr, s.Expr, s.Expr, Token]) -> s.Fold:
+        kind, variable, first, last, body, close = parts
+        return s.Fold(str(kind), variable, first, last, body, self.origin + (kind.start_pos or 0), self._end(close))
+
+    def count(self, parts: tuple[Token, s.Word, Token]) -> s.CountOf:
+        return s.CountOf(parts[1], self.origin + (parts[0].start_pos or 0), self._end(parts[2]))
+
+    # Lists
+
+    def names(self, parts: list[s.Reference]) -> tuple[s.Reference, ...]:
+        return tuple(parts)
+
+    def labels(self, parts: list[s.Word]) -> tuple[s.Word, ...]:
+        return tuple(parts)
+
+    def sums(self, parts: list[s.Expr]) -> tuple[s.Expr, ...]:
+        return tuple(parts)
+
+    def histories(self, parts: list[s.Reference | s.Expr]) -> tuple[tuple[s.Reference, s.Expr], ...]:
+        return tuple(zip(parts[0::2], parts[1::2], strict=True))  # type: ignore[arg-type]
+
+    def by(self, parts: tuple[s.Expr]) -> s.Expr:
+        return parts[0]
+
+    def late(self, parts: tuple[s.Expr]) -> s.Expr:
+        return parts[0]
+
+    def starts(self, parts: tuple[tuple[s.Expr, ...]]) -> Starts:
+        return parts[0], False
+
+    def starts_listed(self, parts: tuple[tuple[s.Expr, ...]]) -> Starts:
+        return parts[0], True
+
+    def between(self, parts: tuple[s.Expr, s.Expr]) -> Limits:
+        return parts[0], parts[1]
+
+    def at_most(self, parts: tuple[s.Expr]) -> Limits:
+        return None, parts[0]
+
+    def at_least(self, parts: tuple[s.Expr]) -> Limits:
+        return parts[0], None
+
+    def named_argument(self, parts: tuple[s.Word, s.Expr]) -> s.Argument:
+        return s.Argument(parts[0], parts[1])
+
+    def argument(self, parts: tuple[s.Expr]) -> s.Argument:
+        return s.Argument(None, parts[0])
+
+    def arguments(self, parts: list[s.Argument]) -> tuple[s.Argument, ...]:
+        return tuple(parts)
+
+    def binding(self, parts: tuple[s.Reference, s.Expr]) -> s.Binding:
+        return s.Binding(parts[0], parts[1], False)
+
+    def binding_each(self, parts: tuple[s.Reference, s.Reference]) -> s.Binding:
+        return s.Binding(parts[0], parts[1], True)
+
+    def binding_table(self, parts: tuple[s.Reference]) -> s.Binding:
+        raise later(f"with {parts[0].name}", parts[0].start, parts[0].end)
+
+    def bindings(self, parts: list[s.Binding]) -> tuple[s.Binding, ...]:
+        return tuple(parts)
+
+    def application(self, parts: tuple[s.Word, tuple[s.Argument, ...], tuple[s.Binding, ...] | None]) -> s.Application:
+        return s.Application(parts[0], parts[1], parts[2] or ())
+
+    # Lines
+
+    def diagram(self, parts: tuple[s.Word]) -> s.Node:
+        return s.DiagramHead(parts[0])
+
+    def include(self, parts: tuple[s.Word]) -> s.Node:
+        return s.Include(parts[0])
+
+    def title(self, parts: tuple[s.Word]) -> s.Node:
+        return s.PageLine("title", parts[0])
+
+    def version(self, parts: tuple[s.Word]) -> s.Node:
+        return s.PageLine("version", parts[0])
+
+    def note(self, parts: tuple[s.Word]) -> s.Node:
+        return s.PageLine("note", parts[0])
+
+    def row(self, parts: tuple[tuple[s.Reference, ...]]) -> s.Node:
+        return s.Row(parts[0])
+
+    def unused(self, parts: tuple[tuple[s.Reference, ...]]) -> s.Node:
+        return s.Unused(parts[0])
+
+    def rate(self, parts: tuple[s.Expr]) -> s.Node:
+        return s.Rate(parts[0])
+
+    def const(self, parts: tuple[s.Reference, s.Expr]) -> s.Node:
+        return s.Const(*parts)
+
+    def open_coefs(self, parts: tuple[tuple[s.Reference, ...]]) -> s.Node:
+        return s.OpenCoefs(parts[0])
+
+    def coef(self, parts: tuple[s.Reference, s.Expr]) -> s.Node:
+        return s.Coef(*parts)
+
+    def coef_list(self, parts: tuple[s.Reference, tuple[s.Expr, ...]]) -> s.Node:
+        return s.CoefList(*parts)
+
+    def coef_file(self, parts: tuple[s.Reference, s.Word]) -> s.Node:
+        return s.CoefFile(*parts)
+
+    def input(self, parts: tuple[tuple[s.Reference, ...]]) -> s.Node:
+        return s.InputLine(parts[0])
+
+    def output(self, parts: tuple[tuple[s.Reference, ...]]) -> s.Node:
+        return s.OutputLine(parts[0])
+
+    def output_of(self, parts: tuple[s.Reference, s.Expr]) -> s.Node:
+        return s.OutputOf(*parts)
+
+    def adder(self, parts: tuple[s.Reference, s.Expr]) -> s.Node:
+        return s.AdderLine(*parts)
+
+    def gain(self, parts: tuple[s.Reference, s.Expr]) -> s.Node:
+        return s.GainLine(*parts)
+
+    def wire(self, parts: tuple[s.Reference, s.Expr]) -> s.Node:
+        return s.WireLine(*parts)
+
+    def delay(self, parts: tuple[tuple[s.Reference, ...], s.Expr, s.Expr | None, Starts | None]) -> s.Node:
+        names, right, by, starts = parts
+        values, listed = starts if starts is not None else (None, False)
+        return s.DelayLine(names, right, by, values, listed)
+
+    def use(self, parts: tuple[s.Reference, s.Application]) -> s.Node:
+        return s.UseLine(*parts)
+
+    def cascade(self, parts: tuple[s.Reference, s.Application]) -> s.Node:
+        return s.CascadeLine(*parts)
+
+    def repeat(self, parts: tuple[s.Word, s.Expr, s.Expr]) -> s.Node:
+        return s.RepeatHead(*parts)
+
+    def repeat_in(self, parts: tuple[s.Word, tuple[s.Word, ...]]) -> s.Node:
+        return s.RepeatIn(*parts)
+
+    def equation(self, parts: tuple[s.Reference, s.Expr, tuple[tuple[s.Reference, s.Expr], ...]]) -> s.Node:
+        return s.EquationLine(*parts)
+
+    def ratio(self, parts: tuple[s.Reference, s.Reference, s.Expr, s.Expr | None]) -> s.Node:
+        return s.RatioLine(*parts)
+
+    def same_as(self, parts: tuple[s.Reference, s.Application]) -> s.Node:
+        return s.SameAsLine(*parts)
+
+    def stable(self, parts: Sequence[s.Word | None]) -> s.Node:
+        return s.StableLine(_number(parts[0]))
+
+    def bounded(self, parts: tuple[s.Word | None, s.Reference, s.Reference]) -> s.Node:
+        return s.BoundedLine(_number(parts[0]), parts[1], parts[2])
+
+    def gain_limit(self, parts: tuple[s.Word | None, s.Reference, s.Reference, s.Expr, Limits]) -> s.Node:
+        number, output, input_, frequency, (lowest, highest) = parts
+        return s.GainLimitLine(_number(number), output, input_, frequency, lowest, highest)
+
+    def count_limit(self, parts: tuple[s.Word | None, Token, s.Expr]) -> s.Node:
+        return s.CountLine(_number(parts[0]), str(parts[1]), parts[2])
+
+
+def _group(factors: list[s.Factor]) -> s.Expr:
+    """One factor alone, or a product."""
+    if len(factors) == 1:
+        return factors[0].body
+    return s.Scaled(tuple(factors), factors[0].body.start, factors[-1].body.end)
+
+
+def _number(word: s.Word | None) -> str:
+    return "" if word is None else word.text
+
+
+def later(what: str, start: int, end: int) -> MisplacedError:
+    """The one wording for what the language describes and this program does not know yet."""
+    return MisplacedError("not-yet", f"`{what}` is not known here yet", "", start, end)
