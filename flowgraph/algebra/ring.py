@@ -1,0 +1,41 @@
+"""What solving a diagram asks of the values it works with."""
+
+from __future__ import annotations
+
+from typing import Protocol, Self, TypeVar
+
+from flowgraph.diagram.expression import Expression
+
+R = TypeVar("R")
+
+
+class Ring(Protocol[R]):
+    """What solving needs of a ring; `zero` and `one` are its constants."""
+
+    zero: R
+    one: R
+    invertible: bool  # every element but zero has an inverse: a field
+
+    def coefficient(self, expression: Expression) -> R: ...
+    def late(self, samples: int) -> R: ...
+    def times(self, left: R, right: R) -> R: ...
+    def plus(self, left: R, right: R) -> R: ...
+    def minus(self, left: R, right: R) -> R: ...
+    def quotient(self, upper: R, lower: R) -> R: ...
+
+
+class ExactRing(Ring[R], Protocol[R]):
+    """A ring of polynomials in which nothing is left to chance."""
+
+    def cleared(self, *polynomials: R) -> tuple[R, ...]:
+        """The polynomials times one common product of coefficient denominators."""
+        ...
+
+
+class Polynomial(Protocol):
+    """An element of an exact ring, whichever of the two it is."""
+
+    def __len__(self) -> int: ...
+    def __add__(self, other: Self, /) -> Self: ...
+    def __sub__(self, other: Self, /) -> Self: ...
+    def __mul__(self, other: Self, /) -> Self: ...

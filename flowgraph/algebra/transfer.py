@@ -1,0 +1,153 @@
+"""Transfer functions in lowest terms: with the names of the coefficients, and with their numbers."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from flint import acb, fmpq, fmpq_mpoly, fmpq_poly, fmpz_poly
+
+from flowgraph.algebra.behaviour import DiagramBehaviour
+from flowgraph.algebra.exact_rings import NumberPolynomials, SymbolPolynomials, exact_ring
+from flowgraph.algebra.rational_functions import symbolic_valuation
+from flowgraph.algebra.ring import ExactRing, Polynomial
+from flowgraph.algebra.solve import Solution, solve
+from flowgraph.diagram.diagram import Diagram
+
+
+@dataclass(frozen=True, slots=True)
+class NamedTransfer:
+    """Coefficients of rising powers of w = z^-1, each an expression in the coefficient names."""
+
+    numerator: tuple[str, ...]
+    denominator: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class NumberTransfer:
+    """Polynomials in w in lowest terms; the denominator starts with 1."""
+
+    numerator: fmpq_poly
+    denominator: fmpq_poly
+
+    def order(self) -> int:
+        """The least number of cells that this response needs."""
+        return max(self.numerator.degree(), self.denominator.degree(), 0)
+
+
+def named_transfers(diagram: Diagram) -> dict[tuple[str, str], NamedTransfer]:
+    """The response of every output to every input, for every value of the coefficients.
+
+    Raises TooLarge where the polynomials would not fit a page, and much more.
+    """
+    behaviour = DiagramBehaviour(diagram)
+    ring = exact_ring(diagram.coefficients, behaviour.expressions())
+    pairs = [(output, port.name) for output in diagram.outputs for port in diagram.inputs()]
+    return {pair: _named(*response, ring) for pair, response in behaviour.responses(ring, pairs).items()}
+
+
+def _named(upper: Polynomial, lowers: list[Polynomial], ring: ExactRing[Polynomial]) -> NamedTransfer:
+    lower = ring.one
+    for factor in lowers:
+        lower = ring.times(lower, factor)
+    if isinstance(upper, fmpq_poly) and isinstance(lower, fmpq_poly):
+        reduced = _lowest_terms(upper, lower)
+        return NamedTransfer(_strings(reduced.numerator), _strings(reduced.denominator))
+    numerator, denominator = ring.cleared(upper, lower)
+    assert isinstance(ring, SymbolPolynomials)
+    assert isinstance(numerator, fmpq_mpoly)
+    assert isinstance(denominator, fmpq_mpoly)
+    shared = numerator.gcd(denominator)
+    numerator, denominator = numerator // shared, denominator // shared
+    scale = _least_whole_factor(denominator)
+    if denominator.leading_coefficient() < 0:
+        scale = -scale
+    return NamedTransfer(_by_power(numerator * scale, ring), _by_power(denominator * scale, ring))
+
+
+def _least_whole_factor(polynomial: fmpq_mpoly) -> int:
+    """What makes the constant term in w begin with whole numbers: the common denominator."""
+    whole = 1
+    for value in polynomial.coeffs():
+        whole = whole * int(value.q) // _gcd(whole, int(value.q))
+    return whole
+
+
+def _gcd(left: int, right: int) -> int:
+    while right:
+        left, right = right, left % right
+    return left
+
+
+def _by_power(polynomial: fmpq_mpoly, ring: SymbolPolynomials) -> tuple[str, ...]:
+    by_power: dict[int, dict[tuple[int, ...], fmpq]] = {}
+    for powers, value in polynomial.to_dict().items():
+        by_power.setdefault(powers[-1], {})[(*powers[:-1], 0)] = value
+    context = polynomial.context()
+    highest = max(by_power, default=0)
+    return tuple(str(context.from_dict(by_power.get(power, {}))) for power in range(highest + 1))
+
+
+def _strings(polynomial: fmpq_poly) -> tuple[str, ...]:
+    return tuple(str(value) for value in polynomial.coeffs()) or ("0",)
+
+
+@dataclass(frozen=True, slots=True)
+class NumberedSolution:
+    """The solution of a diagram whose coefficients are numbers."""
+
+    solution: Solution[fmpq_poly]
+    transfers: dict[tuple[str, str], NumberTransfer]
+
+    def determinants(self) -> list[fmpq_poly]:
+        return [self.solution.determinants[at] for at in sorted(self.solution.determinants)]
+
+
+def number_transfers(diagram: Diagram) -> NumberedSolution:
+    """The responses of a diagram with numbers for coefficients. Raises TooLarge beyond the work limit."""
+    ring = NumberPolynomials(symbolic_valuation(diagram.coefficients))
+    solution = solve(diagram, ring)
+    transfers: dict[tuple[str, str], NumberTransfer] = {}
+    for output in diagram.outputs:
+        for port in diagram.inputs():
+            upper, lowers = solution.pair(output, port.name, ring)
+            lower = ring.one
+            for factor in lowers:
+                lower = ring.times(lower, factor)
+            transfers[(output, port.name)] = _lowest_terms(upper, lower)
+    return NumberedSolution(solution, transfers)
+
+
+def _lowest_terms(upper: fmpq_poly, lower: fmpq_poly) -> NumberTransfer:
+    shared = upper.gcd(lower)
+    upper, lower = upper // shared, lower // shared
+    first = lower[0]
+    return NumberTransfer(upper / first, lower / first)
+
+
+def factors_in_z(determinants: list[fmpq_poly], cells: int) -> list[tuple[fmpz_poly, int]]:
+    """The irreducible factors in z of the characteristic polynomial, with multiplicities.
+
+    det(I - w A) for all cells has them in w; what its degree falls short of the number of cells are
+    modes at z = 0.
+    """
+    found: dict[str, tuple[fmpz_poly, int]] = {}
+    degree = 0
+    for determinant in determinants:
+        degree += max(determinant.degree(), 0)
+        for factor, multiplicity in determinant.numer().factor()[1]:
+            turned = fmpz_poly(factor.coeffs()[::-1])
+            if turned.leading_coefficient() < 0:
+                turned = -turned
+            known = found.get(str(turned), (turned, 0))
+            found[str(turned)] = (turned, known[1] + multiplicity)
+    if cells > degree:
+        found["z"] = (fmpz_poly([0, 1]), cells - degree)
+    return list(found.values())
+
+
+def roots_in_z(polynomial: fmpz_poly) -> Iterator[tuple[float, float, int]]:
+    """The roots of a polynomial in z as (real, imaginary, multiplicity), largest radius first."""
+    found: list[tuple[acb, int]] = polynomial.complex_roots()  # type: ignore[assignment]  # stub: list[acb]
+    roots = [(float(root.real.mid()), float(root.imag.mid()), multiplicity) for root, multiplicity in found]
+    yield from sorted(roots, key=lambda root: (-(root[0] ** 2 + root[1] ** 2), root[0], root[1]))

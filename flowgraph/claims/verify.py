@@ -1,0 +1,74 @@
+"""All claims of a diagram, and those of the diagrams it uses at the values given there."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from flowgraph.claims.intents import verdict_on_intent
+from flowgraph.claims.requirements import needs_values, verdict_on_requirement
+from flowgraph.claims.verdict import Verdict
+from flowgraph.diagram.claim import (
+    BoundedRequirement,
+    CountRequirement,
+    DiagramIntent,
+    EquationIntent,
+    GainRequirement,
+    RatioIntent,
+    StableRequirement,
+)
+from flowgraph.diagram.diagram import Diagram, Use
+from flowgraph.diagram.elements import with_expressions
+from flowgraph.diagram.expression import Expression, rename
+
+
+def verify(diagram: Diagram) -> list[Verdict]:
+    """The verdicts on the claims of one diagram in the order of the file, then those at its uses."""
+    verdicts: list[Verdict] = []
+    for claim in diagram.claims:
+        match claim:
+            case EquationIntent() | RatioIntent() | DiagramIntent():
+                verdicts.append(verdict_on_intent(claim, diagram))
+            case StableRequirement() | BoundedRequirement() | GainRequirement() | CountRequirement():
+                if not (needs_values(claim) and _is_open(diagram)):
+                    verdicts.append(verdict_on_requirement(claim, diagram))
+    verdicts.extend(_at_uses(diagram))
+    return verdicts
+
+
+def _is_open(diagram: Diagram) -> bool:
+    """Whether a coefficient has no value: such a diagram is judged at its uses."""
+    return any(coefficient.value is None for coefficient in diagram.coefficients.values())
+
+
+def _at_uses(diagram: Diagram) -> list[Verdict]:
+    """The requirements of used diagrams that have open coefficients, at each use; equal uses once."""
+    if _is_open(diagram):
+        return []
+    verdicts: list[Verdict] = []
+    judged: set[tuple[str, str]] = set()
+    for use in diagram.uses:
+        claims = [
+            claim
+            for claim in use.diagram.claims
+            if isinstance(claim, StableRequirement | BoundedRequirement | GainRequirement)
+        ]
+        given = (use.diagram.name, repr(sorted((name, repr(value)) for name, value in use.bindings.items())))
+        if not claims or not use.bindings or given in judged:
+            continue
+        judged.add(given)
+        there = at_use(use, diagram)
+        verdicts.extend(verdict_on_requirement(claim, there, use.span) for claim in claims)
+    return verdicts
+
+
+def at_use(use: Use, user: Diagram) -> Diagram:
+    """The used diagram with its coefficients as the user has them: each named by the path of the use."""
+    prefix = f"{use.path}."
+    new_names = {name: prefix + name for name in use.diagram.coefficients}
+
+    def renamed(expression: Expression) -> Expression:
+        return rename(expression, new_names)
+
+    elements = {name: with_expressions(element, renamed) for name, element in use.diagram.elements.items()}
+    rate = use.diagram.rate if use.diagram.rate is not None else user.rate
+    return replace(use.diagram, elements=elements, coefficients=user.coefficients, rate=rate)

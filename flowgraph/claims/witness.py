@@ -1,0 +1,137 @@
+"""A witness against an intent: coefficient values and the first sample at which both sides part."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from fractions import Fraction
+
+from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour, RatioBehaviour
+from flowgraph.algebra.residues import drawn
+from flowgraph.algebra.valuation import followed_expression, following_order
+from flowgraph.algebra.values import Values
+from flowgraph.claims.response import balls_at, first_difference, fractions_at
+from flowgraph.claims.verdict import Counterexample
+from flowgraph.diagram.diagram import Coefficient
+from flowgraph.diagram.expression import Expression, Number, Power, children, names_in
+from flowgraph.diagram.simulate import NoExactValueError
+
+TRIES = 12
+"""Choices of values for coefficients before the search for a witness ends."""
+
+WORK_LIMIT = 20_000_000
+"""Samples times elements of one search."""
+
+
+@dataclass(frozen=True, slots=True)
+class Search:
+    """What a search for a witness found.
+
+    `counterexample` is None when nothing was certainly different. `file_agrees` says that at the
+    values of the file both sides were found equal, exactly when `exact`, else as far as balls tell.
+    """
+
+    counterexample: Counterexample | None
+    file_agrees: bool
+    exact: bool
+
+
+def search_witness(
+    left: Behaviour, right: Behaviour, pair: tuple[str, str], coefficients: Mapping[str, Coefficient]
+) -> Search:
+    """Looks for a difference at the values of the file, then at other values of all that may vary."""
+    expressions = [*left.expressions(), *right.expressions()]
+    varying = varying_names(coefficients, expressions)
+    open_names = [name for name in varying if name not in coefficients or coefficients[name].value is None]
+    samples = _enough_samples(left, right)
+    exact = _rational(coefficients, expressions, open_names)
+    if not open_names:
+        found = _difference(left, right, pair, coefficients, exact, samples)
+        if found:
+            return Search(_counterexample(pair, found, ()), False, exact)
+    for attempt in range(TRIES if varying else 0):
+        chosen = _chosen_values(varying, attempt)
+        others = {**coefficients, **{name: Coefficient(name, Number(value)) for name, value in chosen}}
+        found = _difference(left, right, pair, others, exact, samples)
+        if found:
+            said = tuple((name, str(value)) for name, value in chosen)
+            return Search(_counterexample(pair, found, said), not open_names, exact)
+    return Search(None, not open_names, exact)
+
+
+def varying_names(coefficients: Mapping[str, Coefficient], expressions: list[Expression]) -> list[str]:
+    """The names that may take any value in a proof about the expressions, sorted."""
+    names = {name for expression in expressions for name in names_in(expression)}
+    order = following_order(coefficients, names, at_values=False)
+    return sorted(name for name in order if followed_expression(coefficients, name, at_values=False) is None)
+
+
+def _rational(coefficients: Mapping[str, Coefficient], expressions: list[Expression], open_names: list[str]) -> bool:
+    """Whether all values are rational once the open coefficients have rational ones."""
+    trial = {name: Coefficient(name, Number(value)) for name, value in _chosen_values(open_names, 0)}
+    values = Values({**coefficients, **trial})
+    try:
+        return all(values.is_rational(expression) for expression in expressions)
+    except NoExactValueError:
+        return False
+
+
+def _chosen_values(names: list[str], attempt: int) -> list[tuple[str, Fraction]]:
+    """Small, different values for the names; the first choice is 1/2, 1/3, 1/4 .. for easy reading."""
+    if attempt == 0:
+        return [(name, Fraction(1, at + 2)) for at, name in enumerate(names)]
+    return [(name, Fraction(drawn(str(attempt), name, 61) - 30, 32)) for name in names]
+
+
+def _difference(
+    left: Behaviour,
+    right: Behaviour,
+    pair: tuple[str, str],
+    coefficients: Mapping[str, Coefficient],
+    exact: bool,
+    samples: int,
+) -> tuple[int, str, str] | None:
+    here = (_with_values(left, coefficients), _with_values(right, coefficients))
+    try:
+        if exact:
+            return first_difference(*here, pair, fractions_at(coefficients), samples)
+        return first_difference(*here, pair, balls_at(coefficients), samples)
+    except (ZeroDivisionError, NoExactValueError):
+        return None  # these values are a pole of a coefficient: others are tried
+
+
+def _with_values(behaviour: Behaviour, coefficients: Mapping[str, Coefficient]) -> Behaviour:
+    match behaviour:
+        case DiagramBehaviour(diagram):
+            return DiagramBehaviour(replace(diagram, coefficients=coefficients))
+        case RatioBehaviour(ratio, late, _):
+            return RatioBehaviour(ratio, late, coefficients)
+        case _:
+            return behaviour
+
+
+def _counterexample(
+    pair: tuple[str, str], found: tuple[int, str, str], coefficients: tuple[tuple[str, str], ...]
+) -> Counterexample:
+    sample, value, claimed = found
+    return Counterexample(pair[0], pair[1], sample, value, claimed, coefficients)
+
+
+def _enough_samples(left: Behaviour, right: Behaviour) -> int:
+    """One more than all cells of both sides decides equality (Cayley-Hamilton); the work is limited."""
+    cells, elements = 0, 1
+    for behaviour in (left, right):
+        match behaviour:
+            case DiagramBehaviour(diagram):
+                cells += sum(delay.length for delay in diagram.delays())
+                elements += len(diagram.elements)
+            case RatioBehaviour(ratio, late, _):
+                cells += late + _powers_of_z(ratio)
+    return max(16, min(cells + 1, WORK_LIMIT // elements))
+
+
+def _powers_of_z(ratio: Expression) -> int:
+    """A bound for the degree of a ratio in z: its powers multiplied down, added along."""
+    if isinstance(ratio, Power):
+        return int(abs(ratio.exponent)) * max(1, _powers_of_z(ratio.base))
+    return sum(_powers_of_z(part) for part in children(ratio))
