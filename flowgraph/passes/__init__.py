@@ -1,0 +1,1 @@
+"""Rewriting: one pass a file, and the driver that proves each step."""
