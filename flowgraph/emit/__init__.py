@@ -1,0 +1,1 @@
+"""A diagram and its schedule as program text."""

@@ -1,0 +1,1 @@
+"""Diagrams run on recorded signals."""

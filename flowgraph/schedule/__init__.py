@@ -1,0 +1,1 @@
+"""The ordered list of operations in which one sample is computed."""
