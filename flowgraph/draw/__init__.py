@@ -1,0 +1,1 @@
+"""Drawing: a diagram placed, routed and inked as signal-processing texts draw it."""

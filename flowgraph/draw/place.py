@@ -1,0 +1,369 @@
+"""Placement: from parts and links to spots in columns and half rows ("rail and rows")."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+from flowgraph.draw.columns import Columns
+from flowgraph.draw.model import Sketch
+from flowgraph.draw.plan import Plan, Spot, Wire, add_spots, columns_for
+from flowgraph.draw.rails import find_rails
+from flowgraph.draw.rows import Rows, assign_rows
+
+CLASH_ROUNDS = 60
+
+
+@dataclass(slots=True)
+class _Tap:
+    """A place on a net's row line where it is left: its group, and which links leave there."""
+
+    group: int
+    left: bool
+    rank: int
+    boxed: bool
+    links: list[int] = field(default_factory=list)
+
+
+def place(sketch: Sketch, crowded: frozenset[int] = frozenset()) -> Plan:
+    """Every part at its column and half row, every link as a wire to be routed.
+
+    Spots named in `crowded` get a free column beside them, because a wire found no way there before.
+    """
+    return _Placement(sketch, crowded).plan
+
+
+class _Placement:
+    def __init__(self, sketch: Sketch, crowded: frozenset[int]) -> None:
+        self.sketch = sketch
+        self.crowded = crowded
+        self.plan = Plan(sketch)
+        self.rows: Rows = assign_rows(sketch, find_rails(sketch))
+        self.leaves, self.enters = add_spots(self.plan, self.rows)
+        self.columns = Columns()
+        self.spot_group = [self.columns.new_group() for _ in self.plan.spots]
+        self.taps: dict[int, list[_Tap]] = {}
+        self.tap_of: dict[int, _Tap] = {}
+        self.settled: set[int] = set()
+        self._join_circles()
+        self._join_delays()
+        self._make_taps()
+        self._hang_rungs()
+        self._constrain()
+        self._settle()
+        self._margins()
+        self._add_wires()
+
+    def _off_rail_delay(self, part: int) -> bool:
+        return self.sketch.is_delay(part) and not self.rows.on_rail(part)
+
+    def _vertical(self, part: int) -> bool:
+        return self._off_rail_delay(part) and self.rows.facing[part] in "NS"
+
+    def _flat(self, part: int) -> bool:
+        return self._off_rail_delay(part) and self.rows.facing[part] in "EW"
+
+    def _join_circles(self) -> None:
+        for wire in self.plan.wires:
+            self.columns.join(self.spot_group[wire.source], self.spot_group[wire.target])
+
+    def _join_delays(self) -> None:
+        """Delays that point down hang below one another; delays that point up stand under what reads them."""
+        continued: set[int] = set()
+        for number, link in enumerate(self.sketch.links):
+            source, target = link.source, link.target
+            own = self.spot_group[self.leaves[target]]
+            if self._vertical(target) and self.rows.facing[target] == "S":
+                if self._vertical(source) and self.rows.facing[source] == "S" and source not in continued:
+                    continued.add(source)
+                    self.columns.join(self.spot_group[self.leaves[source]], own)
+            elif self._vertical(target) and not self.rows.on_rail(source) and source not in continued:
+                continued.add(source)
+                self.columns.join(self.spot_group[self.leaves[source]], own)
+            if self._vertical(source) and self.rows.facing[source] == "N" and len(self.sketch.out[source]) == 1:
+                self.columns.join(self.spot_group[self.leaves[source]], self.spot_group[self.enters[number]])
+
+    def _make_taps(self) -> None:
+        for part in range(len(self.sketch.parts)):
+            off = [link for link in self.sketch.out[part] if self.rows.off_rail_link(link)]
+            if self.rows.on_rail(part):
+                self._rail_taps(part, off)
+            elif self._flat(part) and (len(off) > 1 or any(self._leaves_row(link) for link in off)):
+                tap = _Tap(self.columns.new_group(), self.rows.facing[part] == "W", 0, False)
+                self._tap_links(part, tap, off)
+
+    def _leaves_row(self, link: int) -> bool:
+        ends = self.sketch.links[link]
+        return self.rows.line(ends.source) != self.plan.spots[self.enters[link]].line
+
+    def _rail_taps(self, part: int, off: list[int]) -> None:
+        place = self.rows.place[part]
+        ends_here = place is not None and place[1] == len(self.rows.rails[place[0]].parts) - 1
+        if ends_here and len(off) == 1 and not self._off_rail_delay(self.sketch.links[off[0]].target):
+            if not self.rows.leftward[off[0]]:
+                return
+        shared: dict[bool, _Tap] = {}
+        for link in off:
+            target = self.sketch.links[link].target
+            left = self.rows.leftward[link]
+            if self._vertical(target) and self.rows.facing[target] == "S":
+                left = self._line_runs_left(target)
+                tap = _Tap(self.spot_group[self.leaves[target]], left, 2 if left else 1, True)
+                self._tap_links(part, tap, [link])
+            elif self._flat(target):
+                self._tap_links(part, _Tap(self.columns.new_group(), left, 3 if left else 0, False), [link])
+            elif left in shared:
+                self._tap_links(part, shared[left], [link])
+            else:
+                shared[left] = _Tap(self.columns.new_group(), left, 1 if left else 2, False)
+                self._tap_links(part, shared[left], [link])
+
+    def _tap_links(self, part: int, tap: _Tap, links: list[int]) -> None:
+        if tap not in self.taps.setdefault(part, []):
+            self.taps[part].append(tap)
+        tap.links += links
+        for link in links:
+            self.tap_of[link] = tap
+
+    def _line_runs_left(self, delay: int) -> bool:
+        """Whether anything that reads a hanging line of delays lies to its left."""
+        seen: set[int] = set()
+        waiting = [delay]
+        while waiting:
+            part = waiting.pop()
+            for link in self.sketch.out[part]:
+                reader = self.sketch.links[link].target
+                if self._vertical(reader) and reader not in seen:
+                    seen.add(reader)
+                    waiting.append(reader)
+                elif self.rows.leftward[link] and not self._vertical(reader):
+                    return True
+        return False
+
+    def _hang_rungs(self) -> None:
+        """The tap of a lying delay stands exactly under the rail adder it feeds."""
+        used: set[int] = set()
+        for part in range(len(self.sketch.parts)):
+            if not self._flat(part) or part not in self.taps:
+                continue
+            for link in self.sketch.out[part]:
+                target = self.sketch.links[link].target
+                if (
+                    self.rows.on_rail(target)
+                    and self.rows.band[target] == self.rows.band[part]
+                    and target not in used
+                    and self.sketch.parts[target].kind == "adder"
+                    and self.enters[link] == self.leaves[target]
+                    and len(self.sketch.into[target]) < 4
+                ):
+                    used.add(target)
+                    self.columns.join(self.taps[part][0].group, self.spot_group[self.leaves[target]])
+                    break
+
+    def _source_group(self, link: int) -> int:
+        if link in self.tap_of:
+            return self.tap_of[link].group
+        return self.spot_group[self.leaves[self.sketch.links[link].source]]
+
+    def _upright(self, link: int) -> bool:
+        """Whether a gain stands upright on a rung between the rail and the lying row below it."""
+        ends = self.sketch.links[link]
+        band = self.rows.band[ends.source]
+        if not self.rows.rung[band] or self.rows.band[ends.target] != band or link in self.rows.lanes:
+            return False
+        lines = {self.rows.row[ends.source], self.rows.row[ends.target]}
+        return lines == {0, 1} and self.rows.off_rail_link(link)
+
+    def _constrain(self) -> None:
+        for rail in self.rows.rails:
+            for number, part in enumerate(rail.parts):
+                at, boxed = self.spot_group[self.leaves[part]], False
+                for tap in sorted(self.taps.get(part, []), key=lambda tap: (not tap.left, tap.rank)):
+                    wide = 2 if boxed and tap.boxed else 1
+                    if self.columns.require(at, tap.group, wide):
+                        at, boxed = tap.group, tap.boxed
+                if number < len(rail.links):
+                    link = rail.links[number]
+                    after = self.spot_group[self.enters[link]]
+                    both = self.sketch.is_delay(part) and self.sketch.is_delay(rail.parts[number + 1])
+                    direct = both and at == self.spot_group[self.leaves[part]]
+                    self.columns.require(at, after, max(columns_for(self.sketch.links[link]), 2 if direct else 1))
+        for part in range(len(self.sketch.parts)):
+            if self._flat(part) and part in self.taps:
+                self._beside(self.spot_group[self.leaves[part]], self.taps[part][0].group, self.rows.facing[part] == "W", 1)
+        ordered = sorted(range(len(self.sketch.links)), key=self._urgency)
+        for link in ordered:
+            if self.rows.off_rail_link(link):
+                ends = self.sketch.links[link]
+                wide = 1 if self._upright(link) else columns_for(ends)
+                kinds = {self.sketch.parts[ends.source].kind, self.sketch.parts[ends.target].kind}
+                boxes = self._flat(ends.source) and self._flat(ends.target) and link not in self.tap_of
+                if boxes or "gain" in kinds:
+                    wide = max(wide, 2)
+                self._beside(self._source_group(link), self.spot_group[self.enters[link]], self.rows.leftward[link], wide)
+
+    def _urgency(self, link: int) -> tuple[bool, bool, int]:
+        ends = self.sketch.links[link]
+        return (self.rows.band[ends.source] != self.rows.band[ends.target], self.rows.row[ends.target] > 0, link)
+
+    def _beside(self, source: int, target: int, left: bool, wide: int) -> None:
+        if left:
+            self.columns.require(target, source, wide)
+        else:
+            self.columns.require(source, target, wide)
+
+    def _settle(self) -> None:
+        """Solve; while two groups share a cell, order them or move one down; then write the columns."""
+        linked = {(self.leaves[link.source], self.enters[at]) for at, link in enumerate(self.sketch.links)}
+        for _ in range(CLASH_ROUNDS):
+            columns = self.columns.solve()
+            clash = self._first_clash(columns)
+            if clash is not None:
+                one, other = sorted(clash)
+                if not (self.columns.require(one, other, 1) or self.columns.require(other, one, 1)):
+                    self._move_down(other, one)
+            elif not self._part_strangers(columns, linked):
+                break
+        columns = self.columns.solve()
+        for spot, group in zip(self.plan.spots, self.spot_group, strict=True):
+            spot.column = columns[group]
+        self.solved = columns
+
+    def _part_strangers(self, columns: list[int], linked: set[tuple[int, int]]) -> bool:
+        """Leave a column free between neighbours of a row that no wire joins, so that wires reach both."""
+        at: dict[tuple[int, int], int] = {}
+        for number, spot in enumerate(self.plan.spots):
+            if spot.kind not in ("input", "output"):
+                at[columns[self.spot_group[number]], spot.line] = number
+        moved = False
+        for (column, line), left in at.items():
+            right = at.get((column + 1, line))
+            if right is None:
+                continue
+            joined = (left, right) in linked or (right, left) in linked
+            if not joined or left in self.crowded or right in self.crowded:
+                moved = self.columns.require(self.spot_group[left], self.spot_group[right], 2) or moved
+        return moved
+
+    def _extent(self) -> dict[int, tuple[int, int]]:
+        """The half rows that each group covers in its column."""
+        covered: dict[int, list[int]] = {}
+        for spot, group in zip(self.plan.spots, self.spot_group, strict=True):
+            if spot.kind != "output" or self.rows.on_rail(spot.part):
+                covered.setdefault(self.columns.group(group), []).append(spot.line)
+        for part, taps in self.taps.items():
+            for tap in taps:
+                lines = covered.setdefault(self.columns.group(tap.group), [])
+                lines.append(self.rows.line(part))
+                for link in tap.links:
+                    if link in self.rows.lanes:
+                        lines.append(self.rows.half_row(self.rows.band[part], self.rows.lanes[link]))
+                    elif self._upright(link):
+                        lines.append(self.rows.line(part) + 1)
+                    elif self.sketch.parts[self.sketch.links[link].target].kind != "output":
+                        lines.append(self.plan.spots[self.enters[link]].line)
+        return {group: (min(lines), max(lines)) for group, lines in covered.items()}
+
+    def _first_clash(self, columns: list[int]) -> tuple[int, int] | None:
+        by_column: dict[int, list[tuple[int, int, int]]] = {}
+        for group, (top, bottom) in sorted(self._extent().items()):
+            for low, high, other in by_column.get(columns[group], []):
+                if top <= high and low <= bottom:
+                    return group, other
+            by_column.setdefault(columns[group], []).append((top, bottom, group))
+        return None
+
+    def _move_down(self, *groups: int) -> None:
+        for group in groups:
+            members = [
+                spot
+                for spot, own in zip(self.plan.spots, self.spot_group, strict=True)
+                if self.columns.group(own) == group
+            ]
+            if members and not any(self.rows.on_rail(spot.part) for spot in members):
+                for spot in members:
+                    spot.line += 2
+                return
+
+    def _margins(self) -> None:
+        """Inputs to the left margin, outputs to the right one, each further output on a free line."""
+        spots = self.plan.spots
+        inner = [spot.column for spot in spots if spot.kind not in ("input", "output")]
+        inner += [self.solved[tap.group] for taps in self.taps.values() for tap in taps]
+        left = min([spot.column for spot in spots if spot.kind == "input"] + [column - 1 for column in inner], default=0)
+        right = max([spot.column for spot in spots if spot.kind == "output"] + [column + 1 for column in inner], default=1)
+        if left < 0:
+            self.solved = [column - left for column in self.solved]
+            for spot in spots:
+                spot.column -= left
+            left, right = 0, right - left
+        for spot in spots:
+            if spot.kind == "input":
+                spot.column = left
+            elif spot.kind == "output":
+                self._settle_output(spot.part, left, right)
+
+    def _settle_output(self, part: int, left: int, right: int) -> None:
+        spot = self.plan.spots[self.leaves[part]]
+        spot.column = right
+        self._settle_line(part, spot, left, right)
+        self.settled.add(part)
+
+    def _settle_line(self, part: int, spot: Spot, left: int, right: int) -> None:
+        if self.rows.on_rail(part) or not self.sketch.into[part]:
+            return
+        link = self.sketch.into[part][0]
+        source = self.plan.spots[self.leaves[self.sketch.links[link].source]]
+        source_part = self.sketch.links[link].source
+        start = self.solved[self._source_group(link)]
+        flat = not self.rows.on_rail(source_part)
+        if self.rows.leftward[link] and flat and self._clear(spot, source.line, left, start - 1):
+            spot.column, spot.line, spot.facing = left, source.line, "E"
+            return
+        line = self.rows.line(source_part)
+        while not self._clear(spot, line, start + 1, right):
+            line += 2
+        spot.line = line
+
+    def _clear(self, own: Spot, line: int, first: int, last: int) -> bool:
+        """Whether no symbol, port or lane is on a half row between two columns."""
+        for spot in self.plan.spots:
+            settled = spot.kind != "output" or self.rows.on_rail(spot.part) or spot.part in self.settled
+            near = abs(spot.line - line) < (2 if spot.kind == "output" else 1)
+            if spot is not own and settled and first <= spot.column <= last:
+                hangs = spot.kind == "delay" and spot.facing in "NS" and abs(spot.line - line) == 1
+                if near or hangs:
+                    return False
+        for link, row in self.rows.lanes.items():
+            ends = self.sketch.links[link]
+            columns = (self.solved[self._source_group(link)], self.plan.spots[self.enters[link]].column)
+            lane = self.rows.half_row(self.rows.band[ends.source], row)
+            if abs(lane - line) < 1 and first <= max(columns) and min(columns) <= last:
+                return False
+        return True
+
+    def _add_wires(self) -> None:
+        on_rails = {link for rail in self.rows.rails for link in rail.links}
+        for number, link in enumerate(self.sketch.links):
+            tap = self.tap_of.get(number)
+            lane = self.rows.lanes.get(number)
+            self.plan.wires.append(
+                Wire(
+                    self.leaves[link.source],
+                    self.enters[number],
+                    link,
+                    rail=number in on_rails,
+                    upright=self._upright(number),
+                    lane=None if lane is None else self.rows.half_row(self.rows.band[link.source], lane),
+                    tap=None if tap is None else self.solved[tap.group],
+                )
+            )
+        for part, taps in self.taps.items():
+            self.plan.taps[self.leaves[part]] = sorted({self.solved[tap.group] for tap in taps})
+            self.plan.tap_line[self.leaves[part]] = self.rows.line(part)
+        for part in range(len(self.sketch.parts)):
+            if self._vertical(part) and self.rows.facing[part] == "S" and self.sketch.out[part]:
+                spot = self.plan.spots[self.leaves[part]]
+                self.plan.taps[self.leaves[part]] = [spot.column]
+                self.plan.tap_line[self.leaves[part]] = spot.line + 1
+        if self.rows.rails:
+            self.plan.forward = tuple(self.leaves[part] for part in self.rows.rails[0].parts)
