@@ -8,8 +8,8 @@ from fractions import Fraction
 from math import prod
 
 from flowgraph.diagram.claim import Claim
-from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Output, Term
-from flowgraph.diagram.expression import Expression, Negative, Number, Power, Product, Quotient, Sum
+from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Output
+from flowgraph.diagram.expression import Expression, Name, Negative, Number, Power, Product, Quotient, Sum
 from flowgraph.source.span import NOWHERE, Span
 
 
@@ -81,24 +81,41 @@ class Counts:
 
 
 def count(diagram: Diagram) -> Counts:
-    """Cells, multiplies and adds as drawn. A factor of +-1 or +-2^k made of numbers is no multiply."""
-    cells = multiplies = adds = 0
+    """Cells, multiplies and adds as drawn. A factor of +-1 or +-2^k made of numbers is no multiply.
+
+    A coefficient always counts, unless a use gave it a number: then it is that number.
+    """
+    given = given_numbers(diagram)
+    multiplies: dict[Expression, bool] = {}
+
+    def needs_multiply(coefficient: Expression) -> bool:
+        if coefficient not in multiplies:
+            number = given.get(coefficient.name) if isinstance(coefficient, Name) else None
+            multiplies[coefficient] = is_multiply(number or coefficient)
+        return multiplies[coefficient]
+
+    cells = products = adds = 0
     for element in diagram.elements.values():
         match element:
             case Delay(length=length):
                 cells += length
             case Gain(coefficient=coefficient):
-                multiplies += is_multiply(coefficient)
+                products += needs_multiply(coefficient)
             case Adder(terms=terms):
                 adds += len(terms) - 1
-                multiplies += sum(_term_multiplies(term) for term in terms)
+                products += sum(needs_multiply(term.coefficient) for term in terms if term.coefficient is not None)
             case Input():
                 pass
-    return Counts(cells, multiplies, adds)
+    return Counts(cells, products, adds)
 
 
-def _term_multiplies(term: Term) -> bool:
-    return term.coefficient is not None and is_multiply(term.coefficient)
+def given_numbers(diagram: Diagram) -> dict[str, Expression]:
+    """The coefficients that a use gave a number: each is that number, whatever else may vary."""
+    return {
+        name: Number(value)
+        for name, coefficient in diagram.coefficients.items()
+        if coefficient.given and coefficient.value and (value := number_value(coefficient.value)) is not None
+    }
 
 
 def is_multiply(coefficient: Expression) -> bool:

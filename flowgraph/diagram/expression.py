@@ -7,6 +7,7 @@ most 64 deep in a file and long sums and products are flat, so walking a tree by
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 from typing import Literal, TypeAlias
@@ -124,22 +125,27 @@ def names_in(expression: Expression) -> set[str]:
     return found
 
 
-def rename(expression: Expression, new_names: dict[str, str]) -> Expression:
+def rename(expression: Expression, new_names: Mapping[str, str]) -> Expression:
     """The same expression with coefficient names replaced where `new_names` has them."""
+    return substitute(expression, {name: Name(new_name) for name, new_name in new_names.items()})
+
+
+def substitute(expression: Expression, values: Mapping[str, Expression]) -> Expression:
+    """The expression with `values[name]` in place of each name that `values` has."""
     match expression:
         case Name(name):
-            return Name(new_names.get(name, name))
+            return values.get(name, expression)
         case Sum(terms):
-            return Sum(tuple(rename(term, new_names) for term in terms))
+            return Sum(tuple(substitute(term, values) for term in terms))
         case Product(factors):
-            return Product(tuple(rename(factor, new_names) for factor in factors))
+            return Product(tuple(substitute(factor, values) for factor in factors))
         case Negative(inner):
-            return Negative(rename(inner, new_names))
+            return Negative(substitute(inner, values))
         case Quotient(upper, lower):
-            return Quotient(rename(upper, new_names), rename(lower, new_names))
+            return Quotient(substitute(upper, values), substitute(lower, values))
         case Power(base, exponent):
-            return Power(rename(base, new_names), exponent)
+            return Power(substitute(base, values), exponent)
         case Function(name, argument):
-            return Function(name, rename(argument, new_names))
+            return Function(name, substitute(argument, values))
         case _:
             return expression

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import deque
 from collections.abc import Iterable, Iterator, Sequence
 from itertools import islice
 
@@ -42,17 +43,26 @@ def unread_ends(view: Index, roots: Iterable[int]) -> list[int]:
     return sorted(ends)
 
 
-def delay_free_loops(view: Index) -> Iterator[list[int]]:
-    """Every elementary loop of delay-free wires, each from its first element in the file, along the signal.
+MOST_LOOPS = 1000
+"""The most loops that are listed of one group."""
+SMALL_GROUP = 200
+"""Groups up to this size have their loops listed one by one."""
 
-    There may be very many; take as many as are wanted. Johnson 1975, through networkx.
+
+def delay_free_loops(view: Index) -> Iterator[list[int]]:
+    """The elementary loops of delay-free wires, each from its first element in the file, along the signal.
+
+    All of them in groups of up to SMALL_GROUP elements, as far as MOST_LOOPS; of a larger group the
+    shortest loop through each element that lies on none before it. Johnson 1975, through networkx.
     """
     _, groups = instant_order(view)
     for group in sorted(groups):
         if len(group) == 1:
             yield group
-        else:
+        elif len(group) <= SMALL_GROUP:
             yield from _elementary(view, group)
+        else:
+            yield from _shortest(view, group)
 
 
 def _elementary(view: Index, group: list[int]) -> Iterator[list[int]]:
@@ -67,8 +77,26 @@ def _elementary(view: Index, group: list[int]) -> Iterator[list[int]]:
     yield from sorted(found)
 
 
-MOST_LOOPS = 1000
-"""The most loops that are counted in one group."""
+def _shortest(view: Index, group: list[int]) -> Iterator[list[int]]:
+    """A shortest loop through each element that lies on none told before: breadth first along what each reads."""
+    inside = set(group)
+    told: set[int] = set()
+    for root in group:
+        if root in told:
+            continue
+        after: dict[int, int] = {}
+        waiting = deque([root])
+        while root not in after:
+            reader = waiting.popleft()
+            for source in view.instant[reader]:
+                if source in inside and source not in after:
+                    after[source] = reader
+                    waiting.append(source)
+        loop = [root]
+        while after[loop[-1]] != root:
+            loop.append(after[loop[-1]])
+        told.update(loop)
+        yield _from_first(loop)
 
 
 def _from_first(cycle: list[int]) -> list[int]:

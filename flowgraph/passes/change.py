@@ -10,7 +10,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Signal, Term
+from flowgraph.diagram.elements import Signal
 
 
 @dataclass(frozen=True, slots=True)
@@ -27,22 +27,3 @@ class Change:
     message: str
     moved: Mapping[Signal, Signal] = field(default_factory=dict)
     regions: tuple[frozenset[str], ...] = ()
-
-
-def redirected(element: Element, to: Mapping[Signal, Signal]) -> Element:
-    """The element reading `to[signal]` in place of each signal that `to` has."""
-    match element:
-        case Input():
-            return element
-        case Adder(name, terms, span):
-            if not any(term.signal in to for term in terms):
-                return element
-            return Adder(name, tuple(_redirected_term(term, to) for term in terms), span)
-        case Gain(name, coefficient, signal, span):
-            return Gain(name, coefficient, to[signal], span) if signal in to else element
-        case Delay(name, signal, length, starts, span):
-            return Delay(name, to[signal], length, starts, span) if signal in to else element
-
-
-def _redirected_term(term: Term, to: Mapping[Signal, Signal]) -> Term:
-    return Term(to[term.signal], term.negative, term.coefficient, term.span) if term.signal in to else term

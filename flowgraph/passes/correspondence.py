@@ -49,6 +49,8 @@ class _Walk:
             if signal.name not in self._after.elements:
                 return None
             image = signal
+        elif image.name not in self._after.elements:
+            raise NotProved(f"{signal.name} became {image.name}, which is not there")
         if signal not in self._seen:
             self._seen.add(signal)
             self._waiting.append(signal)

@@ -6,6 +6,7 @@ from flowgraph.diagram.diagram import Diagram
 from flowgraph.passes.cancelled_modes import movable
 from flowgraph.passes.change import Change
 from flowgraph.passes.cost import cost
+from flowgraph.passes.drop_unread import drop_unread
 from flowgraph.passes.exchanging import exchanged
 from flowgraph.passes.network import Network
 from flowgraph.passes.sections import cascades
@@ -20,10 +21,13 @@ def exchange_sections(diagram: Diagram) -> Change | None:
     coefficients and contents 0 are moved, only where that saves cells, and never so that a mode which
     does not decay comes before the section that cancels it.
     """
-    if not diagram.delays():
-        return None
+    if not diagram.delays() or drop_unread(diagram) is not None:
+        return None  # cells that nothing reads would be counted as saved
     network = Network(diagram)
-    found = exchanges(network, movable(network, cascades(network)))
+    chains = cascades(network)
+    if not exchanges(network, chains):
+        return None
+    found = exchanges(network, movable(network, chains))
     for chosen in (found, found[:1]):
         if chosen:
             change = exchanged(network, chosen)

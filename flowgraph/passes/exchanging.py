@@ -158,17 +158,20 @@ class _Exchanging:
         """The delays between a signal and one of these nodes, or one known to lead there; none of other lines."""
         passed: list[str] = []
         element = diagram.elements[signal.name]
-        while isinstance(element, Delay) and element.name not in known:
+        # A ring of delays alone has no head; one of them counts as a line with contents.
+        while isinstance(element, Delay) and element.name not in known and not self._holds_contents(element):
             passed.append(element.name)
             element = diagram.elements[element.signal.name]
         return passed if element.name in heads or element.name in known else []
+
+    def _holds_contents(self, line: Delay) -> bool:
+        return line.name in self._network.with_contents
 
     def _message(self, after: Diagram) -> str:
         before = self._network.diagram
         ends = [f"before {self._network.real(moved.exchange.signals[2])}" for moved in self._arranged.moved]
         new = [cell for moved in self._arranged.moved for cell in moved.cells]
         said = f"exchanged the sections {listed(ends)}"
-        return (
-            f"{said}: {counted(count(before).cells, 'cell')} became {count(after).cells}, "
-            f"new {listed([name for name in new if name in after.elements])}"
-        )
+        said += f": {counted(count(before).cells, 'cell')} became {count(after).cells}"
+        new = [name for name in new if name in after.elements]
+        return f"{said}, new {listed(new)}" if new else said

@@ -5,9 +5,9 @@ from __future__ import annotations
 from dataclasses import replace
 
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Element, Signal, signals_read
+from flowgraph.diagram.elements import Element, Signal, redirected, signals_read
 from flowgraph.diagram.index import index, instant_order
-from flowgraph.passes.change import Change, redirected
+from flowgraph.passes.change import Change
 from flowgraph.passes.linear import UNIT, Weight, collected, element_of, multiplies_in, product, terms_of
 from flowgraph.passes.wording import listed
 

@@ -8,9 +8,9 @@ from dataclasses import replace
 from flowgraph.algebra.residues import ResidueArithmetic, drawn
 from flowgraph.algebra.valuation import Valuation
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Delay, Element, Input, Signal
+from flowgraph.diagram.elements import Delay, Element, Input, Signal, redirected
 from flowgraph.diagram.expression import ZERO, Number
-from flowgraph.passes.change import Change, redirected
+from flowgraph.passes.change import Change
 from flowgraph.passes.cost import cost
 from flowgraph.passes.linear import Weight, collected, element_of, multiplies_in, terms_of
 from flowgraph.passes.naming import Names

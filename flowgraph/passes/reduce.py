@@ -6,15 +6,16 @@ strictly fell, and that behaviour is unchanged, starting contents included.
 
 from __future__ import annotations
 
+import gc
 import inspect
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from typing import TypeAlias
 
 from flowgraph.diagram.claim import Claim, DiagramIntent, EquationIntent, RatioIntent
-from flowgraph.diagram.diagram import Counts, Diagram, count
-from flowgraph.diagram.elements import Signal
-from flowgraph.diagram.expression import Expression, names_in
+from flowgraph.diagram.diagram import Counts, Diagram, count, given_numbers
+from flowgraph.diagram.elements import Signal, with_expressions
+from flowgraph.diagram.expression import Expression, names_in, substitute
 from flowgraph.passes.change import Change
 from flowgraph.passes.correspondence import prove_correspondence
 from flowgraph.passes.cost import cost
@@ -86,21 +87,43 @@ class Reduction:
 
 
 def reduce_diagram(diagram: Diagram) -> Reduction:
-    """Every pass in turn, each until it finds nothing, until none does.
+    """The first pass that finds something, again and again, until none does.
 
-    Raises BrokenPassError where a step fails a check; that is a fault of the pass, never of the user.
+    Raises ValueError for a diagram that is not well formed (a loop without a delay, a signal that is
+    not there), and BrokenPassError where a step fails a check: a fault of the pass, never of the user.
     """
+    faults = faults_of_rewriting(diagram, diagram)
+    if faults:
+        raise ValueError("; ".join(faults))
+    collecting = gc.isenabled()
+    gc.disable()  # nothing made here forms cycles, and the collector would walk large diagrams again and again
+    try:
+        return _reduced(diagram)
+    finally:
+        if collecting:
+            gc.enable()
+
+
+def _reduced(diagram: Diagram) -> Reduction:
     steps: list[Step] = []
-    now = diagram
-    progress = True
-    while progress:
-        progress = False
-        for find in PASSES:
-            while (step := take_step(find, now)) is not None:
-                steps.append(step)
-                now = step.after
-                progress = True
+    now = _with_given_numbers(diagram)
+    # After each step the first pass is asked again: what a step left unread goes before anything else is tried.
+    while (step := next(filter(None, (take_step(find, now) for find in PASSES)), None)) is not None:
+        steps.append(step)
+        now = step.after
     return Reduction(diagram, tidied(now) if steps else diagram, tuple(steps))
+
+
+def _with_given_numbers(diagram: Diagram) -> Diagram:
+    """Numbers that uses gave, written where they are used: a coefficient so given is nothing else."""
+    numbers = given_numbers(diagram)
+    if not numbers:
+        return diagram
+    elements = {
+        name: with_expressions(element, lambda expression: substitute(expression, numbers))
+        for name, element in diagram.elements.items()
+    }
+    return replace(diagram, elements=elements)
 
 
 def take_step(find: Pass, diagram: Diagram) -> Step | None:

@@ -9,8 +9,7 @@ loop without a delay.
 from __future__ import annotations
 
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Delay, Element, Input, Output, Signal, signals_read
-from flowgraph.passes.change import redirected
+from flowgraph.diagram.elements import Delay, Element, Input, Output, Signal, redirected, signals_read
 from flowgraph.passes.proof import NotProved, Proof
 
 

@@ -182,10 +182,14 @@ def section(name: str, source: str, b: tuple[str, ...], a: tuple[str, str]) -> s
     """Lines of a direct-form-II section: w = source - a1 w1 - a2 w2, name = b w."""
     parts = [f"{value}*{name}w{k or ''}" for k, value in enumerate(b)]
     return (
-        f"adder {name}w = {source} - {a[0]}*{name}w1 - {a[1]}*{name}w2\n"
-        f"delay {name}w1, {name}w2 = {name}w\n"
-        f"adder {name} = {' + '.join(parts)}\n"
-    ).replace("- -", "+ ").replace("+ -", "- ")
+        (
+            f"adder {name}w = {source} - {a[0]}*{name}w1 - {a[1]}*{name}w2\n"
+            f"delay {name}w1, {name}w2 = {name}w\n"
+            f"adder {name} = {' + '.join(parts)}\n"
+        )
+        .replace("- -", "+ ")
+        .replace("+ -", "- ")
+    )
 
 
 def gain_text(output: str, frequency: str, low: str, high: str) -> str:
@@ -409,7 +413,10 @@ def test_filter_sharpening() -> None:
 def test_k_weighting_of_itu_r_bs_1770() -> None:
     """ITU-R BS.1770, tables 1 and 2 (48 kHz); responses of the cascade recomputed from them."""
     shelf = section(
-        "v", "x", ("1.53512485958697", "-2.69169618940638", "1.19839281085285"), ("-1.69065929318241", "0.73248077421585")
+        "v",
+        "x",
+        ("1.53512485958697", "-2.69169618940638", "1.19839281085285"),
+        ("-1.69065929318241", "0.73248077421585"),
     )
     high = section("y", "v", ("1", "-2", "1"), ("-1.99004745483398", "0.99007225036621"))
     published = [

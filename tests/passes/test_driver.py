@@ -7,10 +7,10 @@ import pytest
 from drawn import diagram_of
 
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Adder, Delay, Gain, Signal, Term
+from flowgraph.diagram.elements import Adder, Delay, Gain, Signal, Term, redirected
 from flowgraph.diagram.expression import Number
-from flowgraph.passes.change import Change, redirected
-from flowgraph.passes.reduce import BrokenPassError, Pass, take_step
+from flowgraph.passes.change import Change
+from flowgraph.passes.reduce import BrokenPassError, Pass, reduce_diagram, take_step
 
 TWICE = diagram_of("""
     coef   r
@@ -120,3 +120,21 @@ def test_a_change_outside_its_regions() -> None:
         return replace(change, regions=(frozenset({"y"}),))
 
     assert reason(broken) == "behaviour is not proved unchanged: x1 changed and stands in 0 regions"
+
+
+def test_a_signal_that_becomes_nothing() -> None:
+    """A signal may only become one that is there."""
+
+    def broken(diagram: Diagram) -> Change:
+        change = put(Gain("y", TWO, Signal("x")), "x1", "u1", "s", "s1", "t", "t1")(diagram)
+        assert change is not None
+        return replace(change, moved={Signal("s"): Signal("q")})
+
+    assert reason(broken) == "behaviour is not proved unchanged: s became q, which is not there"
+
+
+def test_a_diagram_with_a_loop_without_a_delay() -> None:
+    """Nothing can be proved of a diagram that cannot be computed, so it is refused."""
+    loop = replace(TWICE, elements={**TWICE.elements, "s": Adder("s", (Term(Signal("x")), Term(Signal("y"))))})
+    with pytest.raises(ValueError, match=r"^a loop without a delay: s, y$"):
+        reduce_diagram(loop)

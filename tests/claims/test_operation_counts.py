@@ -11,8 +11,9 @@ from flowgraph.text.load import load_text
 
 
 def fir(taps: int) -> str:
-    return f"coef h = [{', '.join(str(k + 3) for k in range(taps))}]\ninput x\noutput y\ndelay line = x by {taps - 1}\n" + (
-        f"adder y = total(k = 0 .. {taps - 1}, h[k]*line[k])"
+    return (
+        f"coef h = [{', '.join(str(k + 3) for k in range(taps))}]\ninput x\noutput y\ndelay line = x by {taps - 1}\n"
+        + (f"adder y = total(k = 0 .. {taps - 1}, h[k]*line[k])")
     )
 
 
