@@ -13,6 +13,7 @@ from typing import Literal, TypeVar
 
 from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour
 from flowgraph.algebra.exact_rings import TooLarge, exact_ring
+from flowgraph.algebra.rational_functions import Undefined
 from flowgraph.algebra.residues import Residues, drawn_prime
 from flowgraph.algebra.ring import ExactRing, Polynomial, Ring
 from flowgraph.algebra.size import error_below
@@ -116,7 +117,7 @@ def _identity_test(
                     return Comparison(False, "identity test", differs_at=pair)
         except ZeroDivisionError:
             if tries > RETRIES:
-                raise
+                raise Undefined("a coefficient divides by zero whatever its values") from None
             continue
         done += 1
     return Comparison(True, "identity test", error_below(left.extent() + right.extent(), DRAWS))

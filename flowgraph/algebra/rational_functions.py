@@ -17,7 +17,7 @@ from flowgraph.diagram.diagram import Coefficient
 from flowgraph.diagram.expression import Function
 
 
-class Undefined(ArithmeticError):
+class Undefined(ZeroDivisionError):
     """A division by something that is zero for every value of the coefficients."""
 
 
@@ -45,7 +45,7 @@ def joined(left: fmpz_mpoly, right: fmpz_mpoly) -> tuple[fmpz_mpoly, fmpz_mpoly]
 
 def lowest_terms(upper: fmpz_mpoly, lower: fmpz_mpoly) -> RationalFunction:
     if not lower:
-        raise Undefined("division by zero")
+        raise Undefined("a coefficient divides by zero whatever its values")
     upper, lower = joined(upper, lower)
     shared = upper.gcd(lower)
     if lower.leading_coefficient() < 0:

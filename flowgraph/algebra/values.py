@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from fractions import Fraction
+from math import inf, isinf
 
 from flint import arb, ctx, fmpq
 
@@ -14,6 +15,14 @@ from flowgraph.diagram.simulate import NoExactValueError, OpenCoefficientError
 
 FIRST_BITS = 128
 MOST_BITS = 8192
+
+LARGEST = arb(2) ** 1024
+SMALLEST = arb(2) ** -1076
+"""Beyond the doubles, and what is rounded to zero."""
+
+
+class DividesByZero(NoExactValueError):
+    """An expression that divides by a rational number that is 0."""
 
 
 class _Fractions:
@@ -42,7 +51,7 @@ class _Fractions:
 
     def divide(self, upper: Fraction, lower: Fraction) -> Fraction:
         if lower == 0:
-            raise NoExactValueError("a coefficient divides by zero")
+            raise DividesByZero("a coefficient divides by zero")
         return upper / lower
 
 
@@ -125,22 +134,56 @@ class Values:
     def double(self, expression: Expression) -> float:
         """The double nearest to the exact value (ties to even).
 
-        Raises NoExactValueError where it has none: not real, not finite, or beyond the doubles.
+        A value that no precision tells from zero, such as sin(pi), is 0.0. Raises NoExactValueError
+        where it has none: not real, not finite, or beyond the doubles.
         """
-        if self.is_rational(expression):
-            try:
-                return float(self.fraction(expression))
-            except OverflowError:
-                raise NoExactValueError("the value lies outside the range of doubles") from None
+        try:
+            value = _nearest(self.fraction(expression))
+        except OpenCoefficientError:
+            raise
+        except DividesByZero:
+            raise NoExactValueError("the value is not a real number: it divides by zero") from None
+        except NoExactValueError:
+            value = self._rounded(expression)
+        if isinf(value):
+            raise NoExactValueError("the value lies outside the range of doubles")
+        return value
+
+    def _rounded(self, expression: Expression) -> float:
+        """The double that both ends of a narrow enough enclosure are rounded to."""
+        reason = "the value is not a real number, or not finite"
         bits = FIRST_BITS
         while bits <= MOST_BITS:
             enclosure = self.ball(expression, bits)
             if enclosure.is_finite():
-                lowest, highest = ends(enclosure)
-                if float(lowest) == float(highest):
-                    return float(lowest)
+                lowest, highest = _doubles(enclosure)
+                if lowest == highest:
+                    return highest
+                reason = "the value lies too near the middle of two doubles to be rounded"
             bits *= 2
-        raise NoExactValueError("the value is not a real number, or not finite")
+        raise NoExactValueError(reason)
+
+
+def _doubles(enclosure: arb) -> tuple[float, float]:
+    """The doubles nearest to both ends of a finite enclosure, infinite beyond them.
+
+    Far outside the doubles the ends are not written out: exp(10^11) has as many bits.
+    """
+    if abs(enclosure) > LARGEST:
+        return (inf, inf) if enclosure > 0 else (-inf, -inf)
+    if enclosure.rad() > LARGEST:
+        return -inf, inf
+    if abs(enclosure) < SMALLEST:
+        return (-0.0, -0.0) if enclosure < 0 else (0.0, 0.0)
+    lowest, highest = ends(enclosure)
+    return _nearest(lowest), _nearest(highest)
+
+
+def _nearest(value: Fraction) -> float:
+    try:
+        return float(value)
+    except OverflowError:
+        return inf if value > 0 else -inf
 
 
 def ends(enclosure: arb) -> tuple[Fraction, Fraction]:

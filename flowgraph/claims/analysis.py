@@ -8,8 +8,9 @@ from fractions import Fraction
 from flint import fmpz_poly
 
 from flowgraph.algebra.exact_rings import TooLarge
-from flowgraph.algebra.modes import CELL_LIMIT, HiddenMode, modes
+from flowgraph.algebra.modes import CELL_LIMIT, HiddenMode, Modes, modes
 from flowgraph.algebra.numbers import numbered
+from flowgraph.algebra.rational_functions import Undefined
 from flowgraph.algebra.residues import drawn
 from flowgraph.algebra.stability import Stability
 from flowgraph.algebra.stability_at_values import characteristic_factors, stability_at_values
@@ -61,13 +62,14 @@ def analyse(diagram: Diagram) -> Analysis:
         named = named_transfers(_with_functions_named(diagram))
     except TooLarge:
         remarks.append("with names, the polynomials grow beyond the work limit")
+    except Undefined as error:
+        remarks.append(str(error))
     cells = len(cells_of(diagram))
     try:
         numbers = numbered(diagram)
     except NoExactValueError as error:
         remarks.append(f"{error}, so poles and stability have no answer here")
-        trial = _at_trial_values(diagram)
-        found = modes(trial, _factors(trial, cells), diagram.name) if 0 < cells <= CELL_LIMIT else None
+        found = _modes_at_trial_values(diagram, cells) if 0 < cells <= CELL_LIMIT else None
         order = found.order if found else 0 if not cells else None
         return Analysis(cells, named, None, None, None, True, order, found.hidden if found else (), tuple(remarks))
     if not numbers.exact:
@@ -134,10 +136,11 @@ def _roots(factors: list[tuple[fmpz_poly, int]]) -> list[Root] | None:
     return sorted(roots, key=lambda root: (-(root[0] ** 2 + root[1] ** 2), root[0], root[1]))
 
 
-def _at_trial_values(diagram: Diagram) -> Diagram:
-    """Numbers drawn for the open coefficients: what is hidden there is hidden for every value.
+def _modes_at_trial_values(diagram: Diagram, cells: int) -> Modes | None:
+    """Modes with numbers drawn for the open coefficients: what is hidden there is hidden for every value.
 
     (Or these values meet an identity by chance, which random 60-bit numerators make next to impossible.)
+    None where a coefficient has no value at them either.
     """
     coefficients = {
         name: Coefficient(name, Number(Fraction(drawn(diagram.name, name, 2**60), 2**60)))
@@ -145,7 +148,11 @@ def _at_trial_values(diagram: Diagram) -> Diagram:
         else coefficient
         for name, coefficient in diagram.coefficients.items()
     }
-    return numbered(replace(diagram, coefficients=coefficients)).diagram
+    try:
+        trial = numbered(replace(diagram, coefficients=coefficients)).diagram
+    except NoExactValueError:
+        return None
+    return modes(trial, _factors(trial, cells), diagram.name)
 
 
 def _with_functions_named(diagram: Diagram) -> Diagram:

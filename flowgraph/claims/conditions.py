@@ -6,7 +6,18 @@ from collections.abc import Iterable, Mapping
 
 from flowgraph.algebra.valuation import followed_expression, following_order
 from flowgraph.diagram.diagram import Coefficient, number_value
-from flowgraph.diagram.expression import ZERO, Expression, Function, Power, Quotient, children, names_in
+from flowgraph.diagram.expression import (
+    ONE,
+    Expression,
+    Function,
+    Negative,
+    Power,
+    Product,
+    Quotient,
+    Sum,
+    children,
+    names_in,
+)
 from flowgraph.text.print_expression import print_expression
 
 
@@ -31,11 +42,11 @@ def conditions(coefficients: Mapping[str, Coefficient], expressions: Iterable[Ex
 
 def _needs(part: Expression) -> list[str]:
     match part:
-        case Quotient(_, lower) if number_value(lower) is None and "z" not in names_in(lower):
-            return [f"{print_expression(lower)} <> 0"]
-        case Power(base, exponent) if exponent < 0 and number_value(base) is None and "z" not in names_in(base):
-            return [f"{print_expression(base)} <> 0"]
-        case Function("sqrt", argument) if number_value(argument) is None:
+        case Quotient(_, lower):
+            return _not_zero(lower)
+        case Power(base, exponent) if exponent < 0:
+            return _not_zero(base)
+        case Function("sqrt", argument) if (number_value(argument) or -1) < 0:
             return [f"{print_expression(argument)} >= 0"]
         case Function("tan", argument):
             return [f"cos({print_expression(argument)}) <> 0"]
@@ -43,17 +54,38 @@ def _needs(part: Expression) -> list[str]:
             return []
 
 
-def constant_term_condition(ratio: Expression) -> tuple[str, ...]:
-    """For ratios whose outermost denominator starts with a symbol: that symbol must not be 0."""
-    if not isinstance(ratio, Quotient):
-        return ()
-    constant = _at_infinity(ratio.lower)
-    return () if constant is None else (f"{print_expression(constant)} <> 0",)
+def _not_zero(lower: Expression) -> list[str]:
+    """A denominator in z is not zero where its first coefficient is not."""
+    _, first = _first_coefficient(lower)
+    while isinstance(first, Negative):
+        first = first.inner
+    return [] if number_value(first) else [f"{print_expression(first)} <> 0"]
 
 
-def _at_infinity(lower: Expression) -> Expression | None:
-    """The part of a denominator without z, when it is one symbolic term of a sum; else None."""
-    terms = [part for part in children(lower) if "z" not in names_in(part)]
-    if len(terms) != 1 or number_value(terms[0]) is not None or terms[0] == ZERO:
-        return None
-    return terms[0]
+def _first_coefficient(ratio: Expression) -> tuple[int, Expression]:
+    """The lowest power of z^-1 in a ratio in z, and its coefficient."""
+    if "z" not in names_in(ratio):
+        return 0, ratio
+    match ratio:
+        case Negative(inner):
+            late, first = _first_coefficient(inner)
+            return late, Negative(first)
+        case Sum(terms):
+            parts = [_first_coefficient(term) for term in terms]
+            earliest = min(late for late, _ in parts)
+            kept = tuple(first for late, first in parts if late == earliest)
+            return earliest, kept[0] if len(kept) == 1 else Sum(kept)
+        case Product(factors):
+            parts = [_first_coefficient(factor) for factor in factors]
+            kept = tuple(first for _, first in parts if first != ONE)
+            late = sum(late for late, _ in parts)
+            return late, ONE if not kept else kept[0] if len(kept) == 1 else Product(kept)
+        case Quotient(upper, lower):
+            late, first = _first_coefficient(upper)
+            late_below, below = _first_coefficient(lower)
+            return late - late_below, first if below == ONE else Quotient(first, below)
+        case Power(base, exponent):
+            late, first = _first_coefficient(base)
+            return late * exponent.numerator, first if first == ONE else Power(first, exponent)
+        case _:
+            return -1, ONE

@@ -6,8 +6,9 @@ from dataclasses import dataclass, replace
 
 from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour, RatioBehaviour
 from flowgraph.algebra.compare import Comparison, compare_behaviours
+from flowgraph.algebra.rational_functions import Undefined
 from flowgraph.algebra.solve import STARTS
-from flowgraph.claims.conditions import conditions, constant_term_condition
+from flowgraph.claims.conditions import conditions
 from flowgraph.claims.equation import NotLinear, equation_diagram
 from flowgraph.claims.response import check_causal
 from flowgraph.claims.verdict import Verdict
@@ -36,8 +37,10 @@ def verdict_on_intent(intent: Intent, diagram: Diagram) -> Verdict:
         comparison = compare_behaviours(question.left, question.right, question.pairs, question.coefficients)
     except NotLinear as error:
         return Verdict(said, intent.span, "undecided", "none", reason=f"the right side is not linear: {error}")
+    except Undefined as error:
+        return Verdict(said, intent.span, "undecided", "none", reason=str(error))
     except ZeroDivisionError as error:
-        return Verdict(said, intent.span, "refuted", "exact", reason=f"no diagram can do this: {error}")
+        return Verdict(said, intent.span, "refuted", "exact", reason=f"no diagram can meet this claim: {error}")
     if comparison.equal:
         return _proved(said, intent, question, comparison)
     return _not_equal(said, intent, question, comparison)
@@ -91,9 +94,9 @@ def _in_our_ports(other: Diagram, output: str, inputs: dict[str, str], diagram: 
 
 
 def _proved(said: str, intent: Intent, question: _Question, comparison: Comparison) -> Verdict:
-    rests_on = conditions(question.coefficients, [*question.left.expressions(), *question.right.expressions()])
-    if isinstance(intent, RatioIntent):
-        rests_on = tuple(dict.fromkeys((*rests_on, *constant_term_condition(intent.ratio))))
+    ratio = [intent.ratio] if isinstance(intent, RatioIntent) else []
+    expressions = [*question.left.expressions(), *question.right.expressions(), *ratio]
+    rests_on = conditions(question.coefficients, expressions)
     return Verdict(said, intent.span, "proved", comparison.method, comparison.error_below, rests_on)
 
 
@@ -105,8 +108,10 @@ def _not_equal(said: str, intent: Intent, question: _Question, comparison: Compa
     if search.counterexample is None:
         return Verdict(said, intent.span, "undecided", method, reason=_why_undecided(search.file_agrees))
     reason = ""
-    if search.file_agrees:
+    if search.file_agrees and search.exact:
         reason = f"holds for the numbers of the file only: make {_unnamed(question)} a const, or name it in the claim"
+    elif search.file_agrees:
+        reason = "with the numbers of the file both sides are equal as far as 512 bits tell"
     return Verdict(
         said, intent.span, "refuted", method, counterexample=search.counterexample, reason=reason
     )

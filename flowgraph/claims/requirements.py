@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from fractions import Fraction
 
 from flowgraph.algebra.exact_rings import TooLarge
-from flowgraph.algebra.frequency import response_at
+from flowgraph.algebra.frequency import BITS, ResponseAt, response_at
 from flowgraph.algebra.numbers import numbered
 from flowgraph.algebra.stability import stability_of_factors
 from flowgraph.algebra.stability_at_values import StabilityVerdict, stability_at_values
@@ -129,15 +130,24 @@ def _gain(requirement: GainRequirement, diagram: Diagram) -> Verdict:
         return _verdict(requirement, diagram, "undecided", "none", "no rate is given, so a frequency has no meaning")
     alone = cone(diagram, requirement.output)
     response = response_at(alone, requirement.output, requirement.input, requirement.frequency / diagram.rate)
+    method = "certified"
     for limit, wanted in ((requirement.lowest, 1), (requirement.highest, -1)):
         if limit is None:
             continue
         side = response.side_of(limit)
         if side is None:
-            return _verdict(requirement, diagram, "undecided", "certified", f"within 1e-12 of the limit {limit} dB")
+            return _verdict(requirement, diagram, "undecided", method, _why_untold(response, limit))
         if side == -wanted:
-            return _verdict(requirement, diagram, "refuted", "certified", f"the gain there is {response.decibels()}")
-    return _verdict(requirement, diagram, "proved", "certified", f"the gain there is {response.decibels()}")
+            return _verdict(requirement, diagram, "refuted", method, f"the gain there is {response.decibels()}")
+        if side == 0:
+            method = "exact"  # a limit that is met is decided by polynomials, not by enclosures
+    return _verdict(requirement, diagram, "proved", method, f"the gain there is {response.decibels()}")
+
+
+def _why_untold(response: ResponseAt, limit: Fraction) -> str:
+    if response.squared_gain(BITS[-1]).is_finite():
+        return f"within 1e-12 of the limit {limit} dB"
+    return "a pole lies at this frequency, or too close to tell"
 
 
 def _count(requirement: CountRequirement, diagram: Diagram) -> Verdict:

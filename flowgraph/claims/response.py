@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from math import isfinite
 from typing import Generic, Protocol, Self, TypeVar
 
 from flint import arb, ctx, nmod
@@ -13,11 +14,11 @@ from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour, RatioBehavi
 from flowgraph.algebra.residues import ResidueArithmetic, drawn_prime
 from flowgraph.algebra.solve import STARTS
 from flowgraph.algebra.valuation import Valuation
-from flowgraph.algebra.values import Values, ends
+from flowgraph.algebra.values import Values
 from flowgraph.diagram.diagram import Coefficient, Diagram
 from flowgraph.diagram.elements import Delay
 from flowgraph.diagram.expression import Expression, Name, Power, children
-from flowgraph.diagram.simulate import simulate
+from flowgraph.diagram.simulate import NoExactValueError, simulate
 
 BITS = 512
 
@@ -53,14 +54,22 @@ def fractions_at(coefficients: Mapping[str, Coefficient]) -> Numbers[Fraction]:
 def balls_at(coefficients: Mapping[str, Coefficient]) -> Numbers[arb]:
     """Certified balls at the values of the coefficients; they differ when they do not touch."""
     values = Values(coefficients)
-    return Numbers(
-        lambda expression: values.ball(expression, BITS), arb(0), arb(1), lambda a, b: not a.overlaps(b), _said_ball
-    )
+
+    def value(expression: Expression) -> arb:
+        ball = values.ball(expression, BITS)
+        if not ball.is_finite():
+            raise NoExactValueError("a coefficient is not a real number, or not finite")
+        return ball
+
+    return Numbers(value, arb(0), arb(1), lambda a, b: not a.overlaps(b), _said_ball)
 
 
 def _said_ball(ball: arb) -> str:
-    low, high = ends(ball)
-    return f"{float((low + high) / 2):.12g}"
+    """Twelve digits of the middle, which may lie far outside the doubles."""
+    if ball.contains(0):
+        return "0"
+    middle = float(ball.mid())
+    return f"{middle:.12g}" if isfinite(middle) and middle else str(ball.mid().str(12, radius=False))
 
 
 def first_difference(
@@ -133,6 +142,8 @@ class _Polynomials(Generic[Q]):
             return ()
         product = [self.numbers.zero] * min(len(left) + len(right) - 1, self.length)
         for i, a in enumerate(left):
+            if a == self.numbers.zero:
+                continue  # long delays are almost all zeros
             for j, b in enumerate(right[: self.length - i]):
                 product[i + j] = product[i + j] + a * b
         return tuple(product)
@@ -144,11 +155,17 @@ class _Polynomials(Generic[Q]):
 def _ratio_series(ratio: Expression, late: int, numbers: Numbers[Q], samples: int) -> list[Q]:
     """The first samples of a ratio in w, by long division.
 
-    A ratio with powers of z above the causal ones is shifted so that the division can begin; a
+    Powers of w common to both sides are taken off so that the division can begin; what is left of a
     denominator without a constant term raises ZeroDivisionError.
     """
-    upper, lower = ratio_in(ratio, _Polynomials(numbers, samples + _powers_above(ratio)))
-    skipped = next((at for at, value in enumerate(lower) if numbers.differ(value, numbers.zero)), None)
+    most = samples + powers_of_z(ratio)
+    length = samples
+    while True:
+        upper, lower = ratio_in(ratio, _Polynomials(numbers, length))
+        skipped = next((at for at, value in enumerate(lower) if numbers.differ(value, numbers.zero)), None)
+        if length >= (most if skipped is None else skipped + samples):
+            break
+        length = min(2 * length, most) if skipped is None else skipped + samples
     if skipped is None:
         raise ZeroDivisionError("the denominator of the ratio is zero")
     if any(numbers.differ(value, numbers.zero) for value in upper[:skipped]):
@@ -163,26 +180,26 @@ def _ratio_series(ratio: Expression, late: int, numbers: Numbers[Q], samples: in
     return ([numbers.zero] * late + response)[:samples]
 
 
-def _powers_above(ratio: Expression) -> int:
-    """How far the denominator of a ratio can begin late: the positive powers of z, added up."""
-    total = 1
-    waiting = [ratio]
-    while waiting:
-        part = waiting.pop()
-        if part == Name("z"):
-            total += 1
-        elif isinstance(part, Power) and part.base == Name("z"):
-            total += max(0, int(part.exponent))
-        else:
-            waiting.extend(children(part) * (int(abs(part.exponent)) if isinstance(part, Power) else 1))
-    return total
+def powers_of_z(ratio: Expression) -> int:
+    """A bound for the degree of a ratio in z: its powers multiplied down, added along."""
+    match ratio:
+        case Name("z"):
+            return 1
+        case Power(base, exponent):
+            return abs(exponent.numerator) * powers_of_z(base)
+        case _:
+            return sum(powers_of_z(part) for part in children(ratio))
 
 
 def check_causal(ratio: Expression, coefficients: Mapping[str, Coefficient]) -> None:
     """Raises ZeroDivisionError, with the reason, for a ratio that no diagram can have at any values."""
     prime = drawn_prime("causal")
     residue = Valuation(ResidueArithmetic(prime, "causal"), coefficients, at_values=False)
-    numbers = Numbers(
-        lambda expression: nmod(residue(expression), prime), nmod(0, prime), nmod(1, prime), lambda a, b: a != b, str
-    )
-    _ratio_series(ratio, 0, numbers, 1)
+
+    def value(expression: Expression) -> nmod:
+        try:
+            return nmod(residue(expression), prime)
+        except ZeroDivisionError:
+            raise ZeroDivisionError("the ratio divides by zero") from None
+
+    _ratio_series(ratio, 0, Numbers(value, nmod(0, prime), nmod(1, prime), lambda a, b: a != b, str), 1)

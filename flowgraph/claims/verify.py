@@ -17,8 +17,7 @@ from flowgraph.diagram.claim import (
     StableRequirement,
 )
 from flowgraph.diagram.diagram import Diagram, Use
-from flowgraph.diagram.elements import with_expressions
-from flowgraph.diagram.expression import Expression, rename
+from flowgraph.text.instantiate import with_renamed_coefficients
 
 
 def verify(diagram: Diagram) -> list[Verdict]:
@@ -63,12 +62,6 @@ def _at_uses(diagram: Diagram) -> list[Verdict]:
 
 def at_use(use: Use, user: Diagram) -> Diagram:
     """The used diagram with its coefficients as the user has them: each named by the path of the use."""
-    prefix = f"{use.path}."
-    new_names = {name: prefix + name for name in use.diagram.coefficients}
-
-    def renamed(expression: Expression) -> Expression:
-        return rename(expression, new_names)
-
-    elements = {name: with_expressions(element, renamed) for name, element in use.diagram.elements.items()}
+    names = {name: f"{use.path}.{name}" for name in use.diagram.coefficients}
     rate = use.diagram.rate if use.diagram.rate is not None else user.rate
-    return replace(use.diagram, elements=elements, coefficients=user.coefficients, rate=rate)
+    return replace(with_renamed_coefficients(use.diagram, names), coefficients=user.coefficients, rate=rate)

@@ -10,10 +10,10 @@ from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour, RatioBehavi
 from flowgraph.algebra.residues import drawn
 from flowgraph.algebra.valuation import followed_expression, following_order
 from flowgraph.algebra.values import Values
-from flowgraph.claims.response import balls_at, first_difference, fractions_at
+from flowgraph.claims.response import balls_at, first_difference, fractions_at, powers_of_z
 from flowgraph.claims.verdict import Counterexample
 from flowgraph.diagram.diagram import Coefficient
-from flowgraph.diagram.expression import Expression, Number, Power, children, names_in
+from flowgraph.diagram.expression import Expression, Number, names_in
 from flowgraph.diagram.simulate import NoExactValueError
 
 TRIES = 12
@@ -44,19 +44,21 @@ def search_witness(
     varying = varying_names(coefficients, expressions)
     open_names = [name for name in varying if name not in coefficients or coefficients[name].value is None]
     samples = _enough_samples(left, right)
-    exact = _rational(coefficients, expressions, open_names)
-    if not open_names:
-        found = _difference(left, right, pair, coefficients, exact, samples)
-        if found:
-            return Search(_counterexample(pair, found, ()), False, exact)
-    for attempt in range(TRIES if varying else 0):
-        chosen = _chosen_values(varying, attempt)
-        others = {**coefficients, **{name: Coefficient(name, Number(value)) for name, value in chosen}}
-        found = _difference(left, right, pair, others, exact, samples)
+    exact, file_agrees = True, False
+    choices = [] if open_names else [list[tuple[str, Fraction]]()]
+    choices.extend(_chosen_values(varying, attempt) for attempt in range(TRIES if varying else 0))
+    for chosen in choices:
+        here = {**coefficients, **{name: Coefficient(name, Number(value)) for name, value in chosen}}
+        exact = _rational(here, expressions)
+        try:
+            found = _difference(left, right, pair, here, exact, samples)
+        except (ZeroDivisionError, NoExactValueError):
+            continue  # these values are a pole of a coefficient: others are tried
         if found:
             said = tuple((name, str(value)) for name, value in chosen)
-            return Search(_counterexample(pair, found, said), not open_names, exact)
-    return Search(None, not open_names, exact)
+            return Search(_counterexample(pair, found, said), file_agrees, exact)
+        file_agrees = file_agrees or not chosen
+    return Search(None, file_agrees, exact)
 
 
 def varying_names(coefficients: Mapping[str, Coefficient], expressions: list[Expression]) -> list[str]:
@@ -66,14 +68,10 @@ def varying_names(coefficients: Mapping[str, Coefficient], expressions: list[Exp
     return sorted(name for name in order if followed_expression(coefficients, name, at_values=False) is None)
 
 
-def _rational(coefficients: Mapping[str, Coefficient], expressions: list[Expression], open_names: list[str]) -> bool:
-    """Whether all values are rational once the open coefficients have rational ones."""
-    trial = {name: Coefficient(name, Number(value)) for name, value in _chosen_values(open_names, 0)}
-    values = Values({**coefficients, **trial})
-    try:
-        return all(values.is_rational(expression) for expression in expressions)
-    except NoExactValueError:
-        return False
+def _rational(coefficients: Mapping[str, Coefficient], expressions: list[Expression]) -> bool:
+    """Whether all expressions have rational values."""
+    values = Values(coefficients)
+    return all(values.is_rational(expression) for expression in expressions)
 
 
 def _chosen_values(names: list[str], attempt: int) -> list[tuple[str, Fraction]]:
@@ -92,12 +90,9 @@ def _difference(
     samples: int,
 ) -> tuple[int, str, str] | None:
     here = (_with_values(left, coefficients), _with_values(right, coefficients))
-    try:
-        if exact:
-            return first_difference(*here, pair, fractions_at(coefficients), samples)
-        return first_difference(*here, pair, balls_at(coefficients), samples)
-    except (ZeroDivisionError, NoExactValueError):
-        return None  # these values are a pole of a coefficient: others are tried
+    if exact:
+        return first_difference(*here, pair, fractions_at(coefficients), samples)
+    return first_difference(*here, pair, balls_at(coefficients), samples)
 
 
 def _with_values(behaviour: Behaviour, coefficients: Mapping[str, Coefficient]) -> Behaviour:
@@ -126,12 +121,5 @@ def _enough_samples(left: Behaviour, right: Behaviour) -> int:
                 cells += sum(delay.length for delay in diagram.delays())
                 elements += len(diagram.elements)
             case RatioBehaviour(ratio, late, _):
-                cells += late + _powers_of_z(ratio)
+                cells += late + powers_of_z(ratio)
     return max(16, min(cells + 1, WORK_LIMIT // elements))
-
-
-def _powers_of_z(ratio: Expression) -> int:
-    """A bound for the degree of a ratio in z: its powers multiplied down, added along."""
-    if isinstance(ratio, Power):
-        return int(abs(ratio.exponent)) * max(1, _powers_of_z(ratio.base))
-    return sum(_powers_of_z(part) for part in children(ratio))

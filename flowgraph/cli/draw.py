@@ -59,7 +59,9 @@ def _format(output: str | None) -> str:
     ending = Path(output).suffix.lower().lstrip(".")
     if ending not in FORMATS:
         known = " and ".join(f".{known}" for known in FORMATS)
-        refuse(f"{output}: drawings are written as {known}, and the name ends in {'.' + ending if ending else 'neither'}")
+        refuse(
+            f"{output}: drawings are written as {known}, and the name ends in {'.' + ending if ending else 'neither'}"
+        )
     return ending
 
 

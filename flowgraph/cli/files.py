@@ -11,7 +11,8 @@ from typing import Literal, NoReturn
 
 from flowgraph.cli.stop import Stop
 from flowgraph.diagram.claim import DiagramIntent
-from flowgraph.diagram.diagram import Coefficient, Diagram
+from flowgraph.diagram.diagram import Diagram
+from flowgraph.diagram.expression import Expression
 from flowgraph.source.diagnostic import Diagnostic
 from flowgraph.source.render import render
 from flowgraph.text.load import Loaded, load
@@ -48,9 +49,9 @@ def chosen_diagrams(
 ) -> list[Diagram]:
     """The diagrams named on the command line, at the values of --with.
 
-    Of a FILE these are the diagrams that no other uses (all of them with `every`). Findings are
-    printed to standard error; those not tolerated end the command with code 1, an unreadable file
-    or an unknown name with code 2.
+    Of a FILE these are its diagrams that no other uses (with `every`, all of them and all those it
+    includes). Findings are printed to standard error; those not tolerated end the command with code
+    1, an unreadable file or an unknown name with code 2.
     """
     diagrams: list[Diagram] = []
     for argument in options.files:
@@ -62,10 +63,10 @@ def chosen_diagrams(
         if name is not None:
             diagrams.append(_named(loaded, name, path))
         else:
-            diagrams.extend(loaded.diagrams if every else _used_by_none(loaded))
+            diagrams.extend(loaded.diagrams if every else _used_by_none(loaded, path))
     if not diagrams:
         refuse(f"{', '.join(options.files)}: there is no diagram here")
-    return [_with_values(diagram, options.values) for diagram in diagrams]
+    return _with_values(diagrams, options.values)
 
 
 def one_diagram(options: argparse.Namespace, tolerance: Tolerance = "nothing") -> Diagram:
@@ -114,29 +115,42 @@ def _named(loaded: Loaded, name: str, path: str) -> Diagram:
     refuse(f"{path}: there is no diagram {name} here (there are: {known})")
 
 
-def _used_by_none(loaded: Loaded) -> list[Diagram]:
-    """The diagrams that no other diagram uses, in elements or in a claim."""
+def _used_by_none(loaded: Loaded, path: str) -> list[Diagram]:
+    """The diagrams of the file itself that no other uses, in elements or in a claim.
+
+    A file that only includes others stands for theirs.
+    """
     used: set[str] = set()
     for diagram in loaded.diagrams:
         used.update(use.diagram.name for use in diagram.uses)
         used.update(claim.other.name for claim in diagram.claims if isinstance(claim, DiagramIntent))
-    return [diagram for diagram in loaded.diagrams if diagram.name not in used]
+    free = [diagram for diagram in loaded.diagrams if diagram.name not in used]
+    return [diagram for diagram in free if diagram.span.file == path] or free
 
 
-def _with_values(diagram: Diagram, values: list[str]) -> Diagram:
-    """The diagram with the values of --with NAME=VALUE in place of those of the file."""
-    if not values:
-        return diagram
-    coefficients = dict(diagram.coefficients)
-    for given in values:
-        name, equals, text = given.partition("=")
-        name = name.strip()
-        if not equals or name not in coefficients:
-            known = ", ".join(known for known in coefficients if "." not in known) or "none"
-            refuse(f"--with {given}: write NAME=VALUE, with a coefficient of {diagram.name} (there are: {known})")
-        try:
-            value = read_value(text)
-        except ValueError as error:
-            refuse(f"--with {given}: {error}")
-        coefficients[name] = Coefficient(name, value, coefficients[name].given, coefficients[name].span)
-    return replace(diagram, coefficients=coefficients)
+def _with_values(diagrams: list[Diagram], given: list[str]) -> list[Diagram]:
+    """The diagrams with the values of --with NAME=VALUE, each in every diagram that has this coefficient."""
+    values = dict(_name_and_value(text) for text in given)
+    for name in values:
+        if not any(name in diagram.coefficients for diagram in diagrams):
+            known = dict.fromkeys(known for diagram in diagrams for known in diagram.coefficients if "." not in known)
+            refuse(f"--with {name}: there is no coefficient {name} here (there are: {', '.join(known) or 'none'})")
+    return [_with_those_it_has(diagram, values) for diagram in diagrams]
+
+
+def _name_and_value(given: str) -> tuple[str, Expression]:
+    name, equals, text = given.partition("=")
+    if not equals:
+        refuse(f"--with {given}: write NAME=VALUE")
+    try:
+        return name.strip(), read_value(text)
+    except ValueError as error:
+        refuse(f"--with {given}: {error}")
+
+
+def _with_those_it_has(diagram: Diagram, values: dict[str, Expression]) -> Diagram:
+    coefficients = {
+        name: replace(coefficient, value=values[name]) if name in values else coefficient
+        for name, coefficient in diagram.coefficients.items()
+    }
+    return replace(diagram, coefficients=coefficients) if values else diagram

@@ -12,6 +12,7 @@ import importlib
 import os
 import sys
 from collections.abc import Sequence
+from io import TextIOWrapper
 
 from flowgraph.cli.stop import Stop
 
@@ -32,6 +33,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     given = list(sys.argv[1:] if arguments is None else arguments)
     # A command makes large trees without cycles and ends; the collector would only walk them again.
     gc.disable()
+    _set_up_streams()
     try:
         return _run(given)
     except Stop as stop:
@@ -43,10 +45,25 @@ def main(arguments: Sequence[str] | None = None) -> int:
         # Whoever read our output has left; nothing more can be said there, not even at exit.
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return 0
+    except MemoryError:
+        print("error: this needs more memory than there is", file=sys.stderr)
+        return 2
     except OSError as error:
-        place = f"{error.filename}: " if error.filename else ""
+        place = "" if error.filename is None else f"{error.filename or 'an empty name'}: "
         print(f"error: {place}{error.strerror or error}", file=sys.stderr)
         return 2
+
+
+def _set_up_streams() -> None:
+    """The same bytes whatever the locale, and names of files that are no UTF-8 written with escapes.
+
+    Where the shell closed a stream, what would go there goes nowhere.
+    """
+    sys.stdout = sys.stdout or open(os.devnull, "w")  # noqa: SIM115  # open to the end of the process
+    sys.stderr = sys.stderr or open(os.devnull, "w")  # noqa: SIM115
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, TextIOWrapper):
+            stream.reconfigure(encoding="utf-8", errors="backslashreplace")
 
 
 def _run(given: list[str]) -> int:
@@ -59,7 +76,8 @@ def _run(given: list[str]) -> int:
     # Only the command that is asked for is imported, so that --help and check answer at once.
     asked = next((word for word in given if word in COMMANDS), None)
     for name, tells in COMMANDS.items():
-        command = commands.add_parser(name, help=tells, description=tells[0].upper() + tells[1:] + ".")
+        describes = tells[0].upper() + tells[1:] + "."
+        command = commands.add_parser(name, help=tells, description=describes, allow_abbrev=False)
         if name == asked:
             module = importlib.import_module(f"flowgraph.cli.{name}")
             module.configure(command)

@@ -27,17 +27,21 @@ def configure(parser: argparse.ArgumentParser) -> None:
 
 def execute(options: argparse.Namespace) -> int:
     """Reduces one diagram and tells each step; refuses a diagram with findings."""
+    from flowgraph.algebra.rational_functions import Undefined
     from flowgraph.passes.reduce import BrokenPassError, reduce_diagram
     from flowgraph.source.whole_file import whole_file
-    from flowgraph.text.printer import print_diagram
+    from flowgraph.text.printer import print_file
 
     diagram = one_diagram(options)
     try:
         reduction = reduce_diagram(diagram)
+    except Undefined as undefined:
+        print(f"error: {diagram.name}: {undefined}", file=sys.stderr)
+        raise Stop(1) from undefined
     except BrokenPassError as broken:
         _tell_broken(broken)
         raise Stop(2) from broken
-    text = print_diagram(reduction.after)
+    text = print_file(reduction.after)
     if options.output is not None:
         with whole_file(options.output) as place:
             place.write_text(text, encoding="utf-8")

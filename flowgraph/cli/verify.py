@@ -9,6 +9,7 @@ from textwrap import wrap
 
 from flowgraph.claims.verdict import Counterexample, Verdict
 from flowgraph.claims.verify import verify
+from flowgraph.claims.wording import claim_text
 from flowgraph.cli.files import add_file_arguments, chosen_diagrams
 from flowgraph.diagram.diagram import Diagram
 
@@ -70,17 +71,27 @@ def _counterexample_told(shown: Counterexample) -> dict[str, object]:
 
 def _page(diagram: Diagram, verdicts: list[Verdict]) -> str:
     """The verdicts of one diagram for reading, at most 80 columns wide."""
-    lines = [f"{diagram.name}: " + (_summary(verdicts) if verdicts else "no claims of its own to judge")]
+    lines = [f"{diagram.name}: " + (_summary(verdicts) if verdicts else "nothing to prove here")]
     for verdict in verdicts:
         head = f"  {_coloured(verdict.outcome):<9}  "
-        claim = wrap(verdict.claim, 67, subsequent_indent="    ", break_on_hyphens=False)
+        claim = _wrapped(verdict.claim, "    ")
         lines.append(head + claim[0])
         lines.extend(f"  {'':<9}  {more}" for more in claim[1:])
         for remark in _remarks(verdict):
-            lines.extend(
-                f"  {'':<9}    {part}" for part in wrap(remark, 65, subsequent_indent="  ", break_on_hyphens=False)
-            )
+            lines.extend(f"  {'':<9}  {part}" for part in _wrapped(f"  {remark}", "    "))
+    for claim_left in _left_to_uses(diagram, verdicts):
+        lines.extend(f"  {part}" for part in _wrapped(f"at uses    {claim_left}", " " * 15))
     return "\n".join(lines)
+
+
+def _wrapped(text: str, indent: str) -> list[str]:
+    return wrap(text, 67, subsequent_indent=indent, break_long_words=False, break_on_hyphens=False)
+
+
+def _left_to_uses(diagram: Diagram, verdicts: list[Verdict]) -> list[str]:
+    """The claims without a verdict: they need values, and open coefficients get theirs where the diagram is used."""
+    judged = {verdict.span for verdict in verdicts}
+    return [f"{claim_text(claim, diagram)} ({claim.span})" for claim in diagram.claims if claim.span not in judged]
 
 
 def _summary(verdicts: list[Verdict]) -> str:
@@ -106,7 +117,7 @@ def _remarks(verdict: Verdict) -> list[str]:
     if verdict.reason:
         remarks.append(verdict.reason)
     if verdict.conditions:
-        remarks.append(f"rests on {', '.join(verdict.conditions)}")
+        remarks.append(f"rests on: {', '.join(verdict.conditions)}")
     shown = verdict.counterexample
     if shown is not None:
         cause = f"a unit pulse at {shown.source}" if shown.source else "the starting contents alone"

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from itertools import pairwise
 
-from flowgraph.draw.gains import LENGTH, WIDTH, Triangle
+from flowgraph.draw.cutting import corners, cut, cut_out, overlap
+from flowgraph.draw.gains import LENGTH, WIDTH, Triangle, standing_triangle
 from flowgraph.draw.grid import CELL
 from flowgraph.draw.labels import (
     coefficient_label,
@@ -13,17 +14,18 @@ from flowgraph.draw.labels import (
     name_label,
     port_label,
 )
-from flowgraph.draw.model import Mark, Part
+from flowgraph.draw.marks import marked
+from flowgraph.draw.model import Part
 from flowgraph.draw.picture import Anchor, Box, Dot, Label, Picture, Point, Shape, WireLine
 from flowgraph.draw.plan import COEFFICIENT_SIZE, PORT_SIZE, Plan, Spot, Wire
 from flowgraph.draw.ports import STEP
-from flowgraph.draw.route import Routed, inwards
+from flowgraph.draw.routed import Routed
 from flowgraph.draw.rows import Side
 
 ADDER_RADIUS = 10.0
 DELAY_WIDTH, DELAY_HEIGHT = 36.0, 30.0
 SIGN_SIZE, BADGE_SIZE = 13.0, 9.0
-FILLS = ("#F0E442", "#56B4E9", "#009E73", "#E69F00", "#CC79A7")
+STUB = 9.0
 PORT_REACH = {"input": 8.0, "output": 8.0}
 BORDER: dict[str, tuple[float, float]] = {
     "adder": (ADDER_RADIUS, ADDER_RADIUS),
@@ -96,17 +98,17 @@ class _Composer:
         loop = part.name in self.in_loop
         match spot.kind:
             case "adder":
-                self.shapes.append(
-                    Shape("adder", part.name, x, y, 20.0, 20.0, title=f"adder {part.name}", loop=loop)
-                )
+                self.shapes.append(Shape("adder", part.name, x, y, 20.0, 20.0, title=f"adder {part.name}", loop=loop))
             case "delay":
                 title = f"delay {part.name}, {part.length} sample{'s' if part.length > 1 else ''}"
                 text = delay_label(part.length)
                 shape = Shape("delay", part.name, x, y, DELAY_WIDTH, DELAY_HEIGHT, spot.facing, text, title)
-                self.shapes.append(shape if part.marks is None else _marked(shape, *part.marks))
+                self.shapes.append(shape if part.marks is None else marked(shape, *part.marks))
                 if part.marks is not None:
                     badge = self.shapes[-1].badge
-                    places = [(x + right * 21, y + down * 11, right) for right, down in ((1, -1), (1, 1), (-1, 1), (-1, -1))]
+                    places = [
+                        (x + right * 21, y + down * 11, right) for right, down in ((1, -1), (1, 1), (-1, 1), (-1, -1))
+                    ]
                     self.badges.append(
                         [Label(badge, at, to, BADGE_SIZE, "badge", "left" if side > 0 else "right", part.name)
                          for at, to, side in places]
@@ -119,8 +121,10 @@ class _Composer:
                 self.shapes.append(
                     Shape("triangle", part.name, x, y, width, height, spot.facing, title=title, loop=loop)
                 )
-                label = coefficient_label(part.coefficient)
-                self.labels.append(Label(label, x, y - height / 2 - 8, COEFFICIENT_SIZE, "coefficient", of=part.name))
+                left, top, right, bottom = standing_triangle(*self.routed.centre(spot), spot.facing, part).label_box()
+                middle = ((left + right) / 2 * CELL, (top + bottom) / 2 * CELL)
+                text = coefficient_label(part.coefficient)
+                self.labels.append(Label(text, *middle, COEFFICIENT_SIZE, "coefficient", of=part.name))
             case "input":
                 self.labels.append(Label(port_label(part.name), x + 4, y, PORT_SIZE, "port", "right", part.name))
             case "output":
@@ -144,7 +148,7 @@ class _Composer:
         if wire.link is None:
             return source in self.in_loop and wire.source in self._loop_circles()
         via = wire.link.gain
-        return (source, target) in self.loop or bool(via) and (via, target) in self.loop
+        return (source, target) in self.loop or (bool(via) and (via, target) in self.loop)
 
     def _loop_circles(self) -> set[int]:
         """Lower circles that a loop runs through on its way up to the adder's top circle."""
@@ -164,16 +168,16 @@ class _Composer:
         wire = self.plan.wires[number]
         cells = self.routed.paths[number]
         source, target = self.plan.spots[wire.source], self.plan.spots[wire.target]
-        points = [(x * CELL, y * CELL) for x, y in _corners(cells)]
+        points = [(x * CELL, y * CELL) for x, y in corners(cells)]
         if cells[0] == self.routed.centre(source):
-            points[0] = _cut(points[0], points[1], BORDER[source.kind])
-        points[-1] = _cut(points[-1], points[-2], BORDER[target.kind])
+            points[0] = cut(points[0], points[1], BORDER[source.kind])
+        points[-1] = cut(points[-1], points[-2], BORDER[target.kind])
         names = self._names(wire)
         if self._is_loop(wire) and cells[0] != self.routed.centre(source):
             self._draw_shared_loop(wire, cells[0])
         arrow = target.kind != "gain"
         triangle = self.routed.triangles.get(number)
-        stretches = [points] if triangle is None else _cut_out(points, triangle)
+        stretches = [points] if triangle is None else cut_out(points, triangle)
         for at, stretch in enumerate(stretches):
             last = at == len(stretches) - 1
             self.wires.append(
@@ -185,19 +189,20 @@ class _Composer:
         net = [cells for number, cells in self.routed.paths.items() if self.plan.wires[number].source == wire.source]
         came: dict[tuple[int, int], tuple[int, int]] = {}
         for cells in net:
-            for before, here in zip(cells, cells[1:], strict=False):
+            for before, here in pairwise(cells):
                 came.setdefault(here, before)
         source = self.plan.spots[wire.source]
         path = [branch]
         while path[-1] in came and path[-1] != self.routed.centre(source):
             path.append(came[path[-1]])
-        points = [(x * CELL, y * CELL) for x, y in _corners(path[::-1])]
-        points[0] = _cut(points[0], points[1], BORDER[source.kind])
+        points = [(x * CELL, y * CELL) for x, y in corners(path[::-1])]
+        points[0] = cut(points[0], points[1], BORDER[source.kind])
         self.wires.append(WireLine(self._net(wire), tuple(points), False, *self._names(wire), loop=True))
 
     def _draw_triangle(self, number: int, triangle: Triangle) -> None:
         wire = self.plan.wires[number]
-        assert wire.link is not None and wire.link.coefficient is not None
+        assert wire.link is not None
+        assert wire.link.coefficient is not None
         name = wire.link.gain or f"{self._names(wire)[0]} to {self._names(wire)[1]}"
         width, height = (WIDTH, LENGTH) if triangle.upright() else (LENGTH, WIDTH)
         title = f"gain {name} = {expression_label(wire.link.coefficient)}"
@@ -220,7 +225,7 @@ class _Composer:
         looped: dict[tuple[int, int, int], bool] = {}
         for number, cells in sorted(self.routed.paths.items()):
             wire = self.plan.wires[number]
-            for (x, y), (to_x, to_y) in zip(cells, cells[1:], strict=False):
+            for (x, y), (to_x, to_y) in pairwise(cells):
                 arms.setdefault((wire.source, x, y), set()).add((to_x - x, to_y - y))
                 arms.setdefault((wire.source, to_x, to_y), set()).add((x - to_x, y - to_y))
                 if self._is_loop(wire):
@@ -242,7 +247,9 @@ class _Composer:
             "S": [(10.0, 16.0), (-10.0, 16.0)],
             "N": [(10.0, -16.0), (-10.0, -16.0)],
         }[side]
-        signs = [Label("−", x + right, y + down, SIGN_SIZE, "sign", of=self._names(wire)[1]) for right, down in candidates]
+        signs = [
+            Label("−", x + right, y + down, SIGN_SIZE, "sign", of=self._names(wire)[1]) for right, down in candidates
+        ]
         self.labels.append(self._freest(signs))
 
     def _freest(self, candidates: list[Label]) -> Label:
@@ -251,16 +258,17 @@ class _Composer:
 
     def _touches(self, box: Box) -> int:
         boxes = [shape.box() for shape in self.shapes] + [label.box() for label in self.labels]
-        count = sum(_overlap(box, other) for other in boxes)
+        count = sum(overlap(box, other) for other in boxes)
         for wire in self.wires:
             for (x, y), (to_x, to_y) in zip(wire.points, wire.points[1:], strict=False):
-                count += _overlap(box, (min(x, to_x), min(y, to_y), max(x, to_x), max(y, to_y)))
+                count += overlap(box, (min(x, to_x), min(y, to_y), max(x, to_x), max(y, to_y)))
         return count
 
     def _label_bare_coefficient(self, number: int) -> None:
         """A coefficient whose triangle found no room stands at its arrow, so that it is never lost."""
         wire = self.plan.wires[number]
-        assert wire.link is not None and wire.link.coefficient is not None
+        assert wire.link is not None
+        assert wire.link.coefficient is not None
         (x, y), side = self._centre(self.plan.spots[wire.target]), self.plan.spots[wire.target].ports[number]
         right, down = STEP[side]
         text = "×" + coefficient_label(wire.link.coefficient)
@@ -286,7 +294,7 @@ class _Composer:
         right, down = STEP[side]
         border = BORDER[target.kind][0 if right else 1]
         tip = (x + right * border, y + down * border)
-        reach = inwards(target) * CELL
+        reach = border + STUB
         end = (x + right * reach, y + down * reach)
         self.wires.append(WireLine(f"connector {number}", (end, tip), True, source_name, target_name))
         if wire.link is not None and wire.link.coefficient is not None:
@@ -309,63 +317,16 @@ class _Composer:
         if source.kind == "input" or any(label.of == source_name and label.role == "note" for label in self.labels):
             return
         x, y = self._centre(source)
-        spots = [(x + 12, y - 14), (x + 12, y + 14), (x - 30, y - 14), (x - 30, y + 14), (x + 20, y - 24), (x - 30, y - 24)]
+        spots = [
+            (x + 12, y - 14),
+            (x + 12, y + 14),
+            (x - 30, y - 14),
+            (x - 30, y + 14),
+            (x + 20, y - 24),
+            (x - 30, y - 24),
+        ]
         self.labels.append(
-            self._freest([Label(name_label(source_name), at, to, 11.0, "note", "left", source_name) for at, to in spots])
+            self._freest(
+                [Label(name_label(source_name), at, to, 11.0, "note", "left", source_name) for at, to in spots]
+            )
         )
-
-
-def _marked(shape: Shape, first: Mark, last: Mark) -> Shape:
-    """The box of a merged cell: its badge, fill, thick line, and a double frame where it is the cell kept."""
-    letter = letters(first.letter)
-    numbers = f"{letter}{first.number}" + (f"–{letter}{last.number}" if last.number != first.number else "")
-    badge = numbers + (f" ×{first.kept}" if first.kept else "")
-    title = f"{shape.title}, {'kept for' if first.kept else 'merges as'} {badge}"
-    fill = FILLS[first.letter % len(FILLS)]
-    return replace(shape, title=title, fill=fill, frames=2 if first.kept else 1, thick=True, badge=badge)
-
-
-def letters(number: int) -> str:
-    """A, B, .. Z, AA, AB, .."""
-    text = ""
-    number += 1
-    while number:
-        number, last = divmod(number - 1, 26)
-        text = chr(ord("A") + last) + text
-    return text
-
-
-def _overlap(one: Box, other: Box) -> bool:
-    return one[0] < other[2] and other[0] < one[2] and one[1] < other[3] and other[1] < one[3]
-
-
-def _corners(cells: list[tuple[int, int]]) -> list[tuple[int, int]]:
-    kept = cells[:1]
-    for before, here, after in zip(cells, cells[1:], cells[2:], strict=False):
-        if (here[0] - before[0], here[1] - before[1]) != (after[0] - here[0], after[1] - here[1]):
-            kept.append(here)
-    return [*kept, cells[-1]]
-
-
-def _cut(centre: Point, towards: Point, border: tuple[float, float]) -> Point:
-    """Where a wire that runs straight from a symbol's centre leaves the symbol."""
-    (x, y), (to_x, to_y) = centre, towards
-    right, down = (to_x > x) - (to_x < x), (to_y > y) - (to_y < y)
-    return x + right * border[0], y + down * border[1]
-
-
-def _cut_out(points: list[Point], triangle: Triangle) -> list[list[Point]]:
-    """A wire in two: up to the triangle's base, and from its tip on."""
-    right, down = STEP[triangle.facing]
-    x, y = triangle.x * CELL, triangle.y * CELL
-    base = (x - right * LENGTH / 2, y - down * LENGTH / 2)
-    tip = (x + right * LENGTH / 2, y + down * LENGTH / 2)
-    for at, ((from_x, from_y), (to_x, to_y)) in enumerate(zip(points, points[1:], strict=False)):
-        ahead = (to_x - from_x) * right + (to_y - from_y) * down
-        along = (x - from_x) * right + (y - from_y) * down
-        aside = abs((x - from_x) * down) + abs((y - from_y) * right)
-        if ahead > 0 and 0 <= along <= ahead and aside < 0.5:
-            return [[*points[: at + 1], base], [tip, *points[at + 1 :]]]
-    return [points]
-
-

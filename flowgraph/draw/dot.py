@@ -9,6 +9,7 @@ from __future__ import annotations
 import shutil
 import subprocess
 import sys
+from itertools import pairwise
 from pathlib import Path
 
 from flowgraph.draw.labels import text_width
@@ -47,7 +48,7 @@ def as_dot(picture: Picture) -> str:
 
 def ink(picture: Picture, form: str) -> bytes:
     """The picture as `svg` or `png` bytes. Raises PenMissing when the pen is not there."""
-    pen = _pen()
+    pen = find_pen()
     done = subprocess.run(
         [pen, "-Kneato", "-n2", f"-T{form}", *(["-Gdpi=144"] if form == "png" else [])],
         input=as_dot(picture).encode(),
@@ -59,7 +60,8 @@ def ink(picture: Picture, form: str) -> bytes:
     return done.stdout
 
 
-def _pen() -> str:
+def find_pen() -> str:
+    """The program beside this Python, else on the PATH. Raises PenMissing."""
     beside = Path(sys.executable).with_name(PEN)
     for candidate in (beside, beside.with_suffix(".exe")):
         if candidate.exists():
@@ -87,7 +89,7 @@ class _Writer:
         self.bottom = bottom
         self.lines = [
             "digraph picture {",
-            'graph [notranslate=true, outputorder=nodesfirst, pad=0, bgcolor=white];',
+            "graph [notranslate=true, outputorder=nodesfirst, pad=0, bgcolor=white];",
             'node [label="", fixedsize=true, fontname=Helvetica, penwidth=1, margin=0];',
             "edge [penwidth=1, arrowsize=0.8];",
         ]
@@ -99,9 +101,12 @@ class _Writer:
     def _at(self, x: float, y: float) -> str:
         return f"{x:.2f},{self.bottom - y:.2f}"
 
-    def node(self, key: str, x: float, y: float, *, width: float, height: float, **attributes: str | int | float) -> None:
+    def node(
+        self, key: str, x: float, y: float, *, width: float, height: float, **attributes: str | int | float
+    ) -> None:
         written = ", ".join(
-            f"{name}={value if isinstance(value, (int, float)) else quoted(value)}" for name, value in attributes.items()
+            f"{name}={value if isinstance(value, (int, float)) else quoted(value)}"
+            for name, value in attributes.items()
         )
         self.lines.append(
             f'"{key}" [pos="{self._at(x, y)}", width={width / 72:.5f}, height={height / 72:.5f}, {written}];'
@@ -137,7 +142,9 @@ class _Writer:
     def _plus(self, shape: Shape, colour: str, width: float) -> None:
         """Two short lines: the glyph of a plus sits off the centre of its circle in many fonts."""
         for right, down in ((4.5, 0.0), (0.0, 4.5)):
-            self._edge((shape.x - right, shape.y - down), (shape.x + right, shape.y + down), colour, max(1.2, width * 0.6))
+            self._edge(
+                (shape.x - right, shape.y - down), (shape.x + right, shape.y + down), colour, max(1.2, width * 0.6)
+            )
 
     def _edge(self, start: Point, end: Point, colour: str, width: float) -> None:
         self.line((start, end), False, colour, width, "plus")
@@ -168,7 +175,7 @@ class _Writer:
             stop = (*points[:-1], (tip_x - right * ARROW_LENGTH, tip_y - down * ARROW_LENGTH))
             head = f"e,{self._at(tip_x, tip_y)} "
         run = [stop[0]]
-        for before, after in zip(stop, stop[1:], strict=False):
+        for before, after in pairwise(stop):
             run += [before, after, after]
         number = len(self.edges)
         for end, (x, y) in (("a", points[0]), ("b", points[-1])):
@@ -189,4 +196,3 @@ class _Writer:
             f'height={(bottom - top) / 72:.5f}, shape=plaintext, label="{escaped}", fontsize={label.size:g}, '
             f'fontname="{FONTS.get(label.role, "Helvetica")}", fontcolor="{colour}", class="label {label.role}"];'
         )
-

@@ -4,11 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 from math import ceil, floor
 from typing import TypeAlias
 
 from flowgraph.draw.grid import CELL, Grid
 from flowgraph.draw.labels import coefficient_label, text_width
+from flowgraph.draw.model import Part
 from flowgraph.draw.plan import COEFFICIENT_SIZE, Plan, Wire
 from flowgraph.draw.rows import Side
 
@@ -50,7 +52,12 @@ class Triangle:
         left, top, right, bottom = self.box()
         if self.upright():
             if self.label_before:
-                return right + GAP_ASIDE, self.y - LABEL_HEIGHT / 2, right + GAP_ASIDE + width, self.y + LABEL_HEIGHT / 2
+                return (
+                    right + GAP_ASIDE,
+                    self.y - LABEL_HEIGHT / 2,
+                    right + GAP_ASIDE + width,
+                    self.y + LABEL_HEIGHT / 2,
+                )
             return left - GAP_ASIDE - width, self.y - LABEL_HEIGHT / 2, left - GAP_ASIDE, self.y + LABEL_HEIGHT / 2
         if self.label_before:
             return self.x - width / 2, top - GAP - LABEL_HEIGHT, self.x + width / 2, top - GAP
@@ -69,9 +76,15 @@ def _cells(box: Box, clearance: float) -> tuple[int, int, int, int]:
     return ceil(left - clearance), ceil(top - clearance), floor(right + clearance), floor(bottom + clearance)
 
 
+def standing_triangle(x: int, y: int, facing: Side, part: Part) -> Triangle:
+    """The triangle of a gain that is a symbol of its own, centred in a cell."""
+    assert part.coefficient is not None
+    return Triangle(x, y, facing, coefficient_label(part.coefficient), True, 0)
+
+
 @dataclass(frozen=True, slots=True)
 class _Run:
-    """A straight run of a path: index of its first cell, start cell, facing, where the centre may be, where it best is."""
+    """A straight run of a path: its first cell, its facing, from where to where the centre may be, where it best is."""
 
     first: int
     x: int
@@ -108,7 +121,8 @@ def set_triangle(
 
     `from_symbol` says that the path begins at the centre of a symbol there, not at a branch.
     """
-    assert wire.link is not None and wire.link.coefficient is not None
+    assert wire.link is not None
+    assert wire.link.coefficient is not None
     label = coefficient_label(wire.link.coefficient)
     own = set(cells)
     best: tuple[float, Triangle] | None = None
@@ -127,7 +141,9 @@ def set_triangle(
                     continue
                 if not _is_free(grid, triangle.cells(), own) or _meets(triangle.box(), others, 0.5):
                     continue
-                if not _is_free(grid, triangle.label_cells(), own) or _meets(triangle.label_box(), others, 0.1, symbols):
+                if not _is_free(grid, triangle.label_cells(), own) or _meets(
+                    triangle.label_box(), others, 0.1, symbols
+                ):
                     cost += 8.0
                 elif _meets(triangle.label_box(), others, NOT_OURS) or _meets(triangle.box(), others, NOT_OURS):
                     cost += 3.0
@@ -167,7 +183,7 @@ def _runs(plan: Plan, wire: Wire, cells: list[tuple[int, int]], private: int, fr
             bends.append(at)
     bends.append(len(cells) - 1)
     runs = []
-    for number, (first, last) in enumerate(zip(bends, bends[1:], strict=False)):
+    for number, (first, last) in enumerate(pairwise(bends)):
         (x, y), (to_x, to_y) = cells[first], cells[last]
         length = abs(to_x - x) + abs(to_y - y)
         facing: Side = "E" if to_x > x else "W" if to_x < x else "S" if to_y > y else "N"

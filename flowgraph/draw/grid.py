@@ -17,6 +17,7 @@ NEAR_SYMBOL = 2.0
 OUTSIDE = 1.0
 LABEL = 12.0
 MOST_STEPS = 15_000
+POCKET = 150
 
 
 @dataclass(frozen=True, slots=True)
@@ -95,8 +96,7 @@ class Grid:
         width, moves, blocked, knot = self.width, self.moves, self.blocked, self.knot
         across, upright, extra = self.across, self.upright, self.cost
         goal_x, goal_y = goal % width, goal // width
-        before = goal - moves[arrival]
-        if blocked[before] and all(start.cell not in (before, goal) for start in starts):
+        if self._walled_in(net, {start.cell for start in starts}, goal, arrival):
             return None
 
         def rest(cell: int, direction: int) -> float:
@@ -150,7 +150,9 @@ class Grid:
                     continue
                 cost = spent + 1.0 + extra[following]
                 if turn & 1:
-                    if upright[following] >= 0 or (across[following] >= 0 and (knot[following] or across[following] == net)):
+                    if upright[following] >= 0 or (
+                        across[following] >= 0 and (knot[following] or across[following] == net)
+                    ):
                         continue
                     cost += self.beside_upright[following]
                     if across[following] >= 0:
@@ -173,6 +175,29 @@ class Grid:
                     order += 1
                     heappush(heap, (cost + rest(following, turn), order, cost, reached))
         return None
+
+    def _enterable(self, net: int, cell: int, direction: int) -> bool:
+        """Whether a wire of the net may come into a cell in a direction: free, or another net's straight run across."""
+        if self.blocked[cell]:
+            return False
+        along, crossed = (self.upright, self.across) if direction & 1 else (self.across, self.upright)
+        return along[cell] < 0 and (crossed[cell] < 0 or not (self.knot[cell] or crossed[cell] == net))
+
+    def _walled_in(self, net: int, starts: set[int], goal: int, arrival: int) -> bool:
+        """Whether the few cells around the goal that wires can come from are closed off from all starts."""
+        seen = {(goal, arrival)}
+        waiting = [(goal, arrival)]
+        for cell, direction in waiting:
+            before = cell - self.moves[direction]
+            if before in starts or len(seen) > POCKET:
+                return False
+            straight_only = self.across[before] >= 0 or self.upright[before] >= 0
+            turns = (direction,) if straight_only else (direction, (direction + 1) & 3, (direction + 3) & 3)
+            for turn in turns:
+                if (before, turn) not in seen and self._enterable(net, before, turn):
+                    seen.add((before, turn))
+                    waiting.append((before, turn))
+        return goal not in starts
 
 
 def _trace(came: dict[int, int], state: int) -> list[int]:

@@ -29,7 +29,28 @@ _SUBSCRIPTS = str.maketrans("0123456789", "₀₁₂₃₄₅₆₇₈₉")
 _SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 _GREEK = dict(
     zip(
-        "alpha beta gamma delta epsilon zeta eta theta kappa lambda mu nu xi rho sigma tau phi chi psi omega".split(),
+        [
+            "alpha",
+            "beta",
+            "gamma",
+            "delta",
+            "epsilon",
+            "zeta",
+            "eta",
+            "theta",
+            "kappa",
+            "lambda",
+            "mu",
+            "nu",
+            "xi",
+            "rho",
+            "sigma",
+            "tau",
+            "phi",
+            "chi",
+            "psi",
+            "omega",
+        ],
         "αβγδεζηθκλμνξρστφχψω",
         strict=True,
     )

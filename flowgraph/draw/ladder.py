@@ -6,7 +6,8 @@ input wire on top, delays and adders alternate below. A long ladder shows its fi
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from itertools import pairwise
 
 from flowgraph.draw.model import Link, Part, Sketch
 from flowgraph.draw.plan import Plan, Spot, Wire, columns_for
@@ -54,7 +55,9 @@ def find_ladder(sketch: Sketch) -> Ladder | None:
     used = {part for rung in found for part in (*rung.delays, rung.adder)} | {inputs[0], outputs[0]}
     if len(used) != len(sketch.parts):
         return None
-    return Ladder(tuple(found), sketch.is_delay(found[0].adder) or _is_transposed(sketch, found), inputs[0], outputs[0], last)
+    return Ladder(
+        tuple(found), sketch.is_delay(found[0].adder) or _is_transposed(sketch, found), inputs[0], outputs[0], last
+    )
 
 
 def _is_transposed(sketch: Sketch, rungs: list[_Rung]) -> bool:
@@ -86,7 +89,7 @@ def _direct(sketch: Sketch, source: int, last: int) -> list[_Rung] | None:
             pending = []
     if not rungs or pending or len(rungs) < 2 or rungs[-1].adder != last:
         return None
-    for before, after in zip(rungs, rungs[1:], strict=False):
+    for before, after in pairwise(rungs):
         if before.adder != after.adder and not _feeds(sketch, before.adder, after.adder):
             return None
     inner = {rung.adder for rung in rungs}
@@ -130,7 +133,12 @@ def _transposed(sketch: Sketch, source: int, last: int) -> list[_Rung] | None:
             rungs.append(_Rung(first, (), delays[-1]))
             return rungs[::-1]
         adder = first.source
-        if sketch.parts[adder].kind != "adder" or len(sketch.out[adder]) != 1 or adder == last or len(rungs) > len(sketch.parts):
+        if (
+            sketch.parts[adder].kind != "adder"
+            or len(sketch.out[adder]) != 1
+            or adder == last
+            or len(rungs) > len(sketch.parts)
+        ):
             return None
 
 
@@ -164,7 +172,13 @@ class _Builder:
         for number, rung in enumerate(shown):
             skipped = bool(hidden) and number == FIRST_SHOWN
             before = column
-            column = column + (2 * self.pitch + 1 if skipped else self.pitch) if number else 1
+            room = 2 * len(rung.delays)
+            if skipped:
+                column += 2 * self.pitch + 1
+            elif number:
+                column += max(self.pitch, room)
+            else:
+                column = max(1, 0 if ladder.transposed else room)
             if ladder.transposed:
                 self._transposed_rung(rung, before, column, hidden if skipped else 0)
             else:

@@ -114,7 +114,9 @@ class _Folding:
         self.taps = _by_name((signal.name, signal.tap) for signal in self.readers)
         self.marked = _by_name(self.marks)
         self.folded = {
-            name for name, element in diagram.elements.items() if isinstance(element, Gain) and self._is_decoration(name)
+            name
+            for name, element in diagram.elements.items()
+            if isinstance(element, Gain) and self._is_decoration(name)
         }
         self.lines = self._lines()
         self.carrier: dict[Signal, int] = {}
@@ -150,9 +152,7 @@ class _Folding:
                 only = self.readers.get(delay.signal, []) == [delay.name]
                 if only and not self._is_cut((source.name, source.length), (delay.name, 1)):
                     continued.add(delay.name)
-        followers = {
-            delay.signal.name: delay for delay in self.diagram.delays() if delay.name in continued
-        }
+        followers = {delay.signal.name: delay for delay in self.diagram.delays() if delay.name in continued}
         waiting = [delay for delay in self.diagram.delays() if delay.name not in continued]
         done: set[str] = set()
         waiting += [delay for delay in self.diagram.delays() if delay.name in continued]
@@ -236,9 +236,7 @@ class _Folding:
                         self.sketch.add_link(Link(previous, number))
                     previous = number
 
-    def _link(
-        self, signal: Signal, target: int, negative: bool = False, coefficient: Expression | None = None
-    ) -> None:
+    def _link(self, signal: Signal, target: int, negative: bool = False, coefficient: Expression | None = None) -> None:
         gain = ""
         if signal.name in self.folded:
             element = self.diagram.elements[signal.name]

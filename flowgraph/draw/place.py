@@ -5,12 +5,14 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 from flowgraph.draw.columns import Columns
+from flowgraph.draw.lanes import stack_bands
 from flowgraph.draw.model import Sketch
 from flowgraph.draw.plan import Plan, Spot, Wire, add_spots, columns_for
 from flowgraph.draw.rails import find_rails
 from flowgraph.draw.rows import Rows, assign_rows
 
 CLASH_ROUNDS = 60
+MOST_MOVES = 4
 
 
 @dataclass(slots=True)
@@ -38,12 +40,14 @@ class _Placement:
         self.crowded = crowded
         self.plan = Plan(sketch)
         self.rows: Rows = assign_rows(sketch, find_rails(sketch))
+        stack_bands(self.rows)
         self.leaves, self.enters = add_spots(self.plan, self.rows)
         self.columns = Columns()
         self.spot_group = [self.columns.new_group() for _ in self.plan.spots]
         self.taps: dict[int, list[_Tap]] = {}
         self.tap_of: dict[int, _Tap] = {}
         self.settled: set[int] = set()
+        self.moved: list[tuple[int, int]] = []
         self._join_circles()
         self._join_delays()
         self._make_taps()
@@ -62,6 +66,17 @@ class _Placement:
     def _flat(self, part: int) -> bool:
         return self._off_rail_delay(part) and self.rows.facing[part] in "EW"
 
+    def _lines(self, group: int) -> set[int]:
+        """The half rows that the members of a group stand on."""
+        group = self.columns.group(group)
+        spots = zip(self.plan.spots, self.spot_group, strict=True)
+        return {spot.line for spot, own in spots if self.columns.group(own) == group}
+
+    def _join(self, one: int, other: int) -> None:
+        """Let two groups share a column, unless members of both would stand in one place."""
+        if self._lines(one).isdisjoint(self._lines(other)):
+            self.columns.join(one, other)
+
     def _join_circles(self) -> None:
         for wire in self.plan.wires:
             self.columns.join(self.spot_group[wire.source], self.spot_group[wire.target])
@@ -75,12 +90,12 @@ class _Placement:
             if self._vertical(target) and self.rows.facing[target] == "S":
                 if self._vertical(source) and self.rows.facing[source] == "S" and source not in continued:
                     continued.add(source)
-                    self.columns.join(self.spot_group[self.leaves[source]], own)
+                    self._join(self.spot_group[self.leaves[source]], own)
             elif self._vertical(target) and not self.rows.on_rail(source) and source not in continued:
                 continued.add(source)
-                self.columns.join(self.spot_group[self.leaves[source]], own)
+                self._join(self.spot_group[self.leaves[source]], own)
             if self._vertical(source) and self.rows.facing[source] == "N" and len(self.sketch.out[source]) == 1:
-                self.columns.join(self.spot_group[self.leaves[source]], self.spot_group[self.enters[number]])
+                self._join(self.spot_group[self.leaves[source]], self.spot_group[self.enters[number]])
 
     def _make_taps(self) -> None:
         for part in range(len(self.sketch.parts)):
@@ -98,9 +113,9 @@ class _Placement:
     def _rail_taps(self, part: int, off: list[int]) -> None:
         place = self.rows.place[part]
         ends_here = place is not None and place[1] == len(self.rows.rails[place[0]].parts) - 1
-        if ends_here and len(off) == 1 and not self._off_rail_delay(self.sketch.links[off[0]].target):
-            if not self.rows.leftward[off[0]]:
-                return
+        goes_straight_on = ends_here and len(off) == 1 and not self.rows.leftward[off[0]]
+        if goes_straight_on and not self._off_rail_delay(self.sketch.links[off[0]].target):
+            return
         shared: dict[bool, _Tap] = {}
         for link in off:
             target = self.sketch.links[link].target
@@ -156,7 +171,7 @@ class _Placement:
                     and len(self.sketch.into[target]) < 4
                 ):
                     used.add(target)
-                    self.columns.join(self.taps[part][0].group, self.spot_group[self.leaves[target]])
+                    self._join(self.taps[part][0].group, self.spot_group[self.leaves[target]])
                     break
 
     def _source_group(self, link: int) -> int:
@@ -189,7 +204,9 @@ class _Placement:
                     self.columns.require(at, after, max(columns_for(self.sketch.links[link]), 2 if direct else 1))
         for part in range(len(self.sketch.parts)):
             if self._flat(part) and part in self.taps:
-                self._beside(self.spot_group[self.leaves[part]], self.taps[part][0].group, self.rows.facing[part] == "W", 1)
+                self._beside(
+                    self.spot_group[self.leaves[part]], self.taps[part][0].group, self.rows.facing[part] == "W", 1
+                )
         ordered = sorted(range(len(self.sketch.links)), key=self._urgency)
         for link in ordered:
             if self.rows.off_rail_link(link):
@@ -199,7 +216,9 @@ class _Placement:
                 boxes = self._flat(ends.source) and self._flat(ends.target) and link not in self.tap_of
                 if boxes or "gain" in kinds:
                     wide = max(wide, 2)
-                self._beside(self._source_group(link), self.spot_group[self.enters[link]], self.rows.leftward[link], wide)
+                self._beside(
+                    self._source_group(link), self.spot_group[self.enters[link]], self.rows.leftward[link], wide
+                )
 
     def _urgency(self, link: int) -> tuple[bool, bool, int]:
         ends = self.sketch.links[link]
@@ -221,6 +240,7 @@ class _Placement:
                 one, other = sorted(clash)
                 if not (self.columns.require(one, other, 1) or self.columns.require(other, one, 1)):
                     self._move_down(other, one)
+                    self.moved.append((one, other))
             elif not self._part_strangers(columns, linked):
                 break
         columns = self.columns.solve()
@@ -239,10 +259,15 @@ class _Placement:
             right = at.get((column + 1, line))
             if right is None:
                 continue
-            joined = (left, right) in linked or (right, left) in linked
+            joined = self._face_to_face(left, right, linked)
             if not joined or left in self.crowded or right in self.crowded:
                 moved = self.columns.require(self.spot_group[left], self.spot_group[right], 2) or moved
         return moved
+
+    def _face_to_face(self, left: int, right: int, linked: set[tuple[int, int]]) -> bool:
+        """Whether a wire goes straight from one neighbour into the other."""
+        facings = {self.plan.spots[spot].facing for spot in (left, right) if self.plan.spots[spot].kind != "adder"}
+        return ((left, right) in linked and facings <= {"E"}) or ((right, left) in linked and facings <= {"W"})
 
     def _extent(self) -> dict[int, tuple[int, int]]:
         """The half rows that each group covers in its column."""
@@ -267,7 +292,8 @@ class _Placement:
         by_column: dict[int, list[tuple[int, int, int]]] = {}
         for group, (top, bottom) in sorted(self._extent().items()):
             for low, high, other in by_column.get(columns[group], []):
-                if top <= high and low <= bottom:
+                hopeless = self.moved.count((min(group, other), max(group, other))) > MOST_MOVES
+                if top <= high and low <= bottom and not hopeless:
                     return group, other
             by_column.setdefault(columns[group], []).append((top, bottom, group))
         return None
@@ -289,8 +315,12 @@ class _Placement:
         spots = self.plan.spots
         inner = [spot.column for spot in spots if spot.kind not in ("input", "output")]
         inner += [self.solved[tap.group] for taps in self.taps.values() for tap in taps]
-        left = min([spot.column for spot in spots if spot.kind == "input"] + [column - 1 for column in inner], default=0)
-        right = max([spot.column for spot in spots if spot.kind == "output"] + [column + 1 for column in inner], default=1)
+        left = min(
+            [spot.column for spot in spots if spot.kind == "input"] + [column - 1 for column in inner], default=0
+        )
+        right = max(
+            [spot.column for spot in spots if spot.kind == "output"] + [column + 1 for column in inner], default=1
+        )
         if left < 0:
             self.solved = [column - left for column in self.solved]
             for spot in spots:

@@ -36,7 +36,8 @@ def assign_ports(plan: Plan) -> None:
 
 def _assign_circle(plan: Plan, number: int, entering: list[int], leaving: list[int], on_rail: bool) -> None:
     spot = plan.spots[number]
-    costs = [_costs(*_from(plan, spot, plan.wires[wire]), _weight(plan.wires[wire])) for wire in entering]
+    wires = [plan.wires[wire] for wire in entering]
+    costs = [_costs(*_from(plan, spot, wire), _weight(wire), wire.tap is not None) for wire in wires]
     if not spot.top:
         leave = dict.fromkeys(SIDES, 50.0) | {"N": 0.0}
     elif on_rail:
@@ -72,15 +73,21 @@ def _from(plan: Plan, spot: Spot, wire: Wire) -> tuple[int, int]:
     return column - spot.column, line - spot.line
 
 
-def _costs(right: int, down: int, weight: float) -> dict[Side, float]:
-    """What each side costs for a partner that lies `right` columns and `down` half rows away."""
+def _costs(right: int, down: int, weight: float, along_row: bool = False) -> dict[Side, float]:
+    """What each side costs for a partner that lies `right` columns and `down` half rows away.
+
+    A wire that comes down a tap column and then along the row (`along_row`) rather enters sideways.
+    """
     table: dict[Side, float] = {}
     for side in SIDES:
         across, along = STEP[side]
         ahead = across * right + along * down
         aside = abs(along * right) + abs(across * down)
-        if ahead > 0:
-            cost = 0.0 if aside == 0 else 1.2 if (ahead >= aside if across else ahead > aside) else 1.6
+        if ahead > 0 and aside == 0:
+            cost = min(1.0, 0.01 * ahead)  # of two in line the nearer one keeps the straight way
+        elif ahead > 0:
+            favoured = bool(across) if along_row else ahead >= aside if across else ahead > aside
+            cost = 1.2 if favoured else 1.6
         elif ahead == 0:
             cost = 4.0
         else:

@@ -1,4 +1,4 @@
-"""Rows: how far below its rail each part stands, which way each delay points, where return wires run.
+"""Rows: how far below its rail each part stands, which way each delay points, which way links run.
 
 The row of a part is its distance from the rail in delays: max(1, fewest delays from the rail to it,
 fewest delays from it to the rail). This one rule lays out both direct forms, the transposed form
@@ -62,7 +62,7 @@ class Rows:
 
 
 def assign_rows(sketch: Sketch, rails: list[Rail]) -> Rows:
-    """Bands, rows and facings of all parts, and lanes for links that lead from rail to rail."""
+    """Bands, rows and facings of all parts. Lanes and the stacking of bands come after (`stack_bands`)."""
     count = len(sketch.parts)
     rows = Rows(sketch, rails, [None] * count, [0] * count, [0] * count, ["E"] * count, [None] * count, [None] * count)
     for band, rail in enumerate(rails):
@@ -74,9 +74,6 @@ def assign_rows(sketch: Sketch, rails: list[Rail]) -> Rows:
     _assign_bands(rows, lowered)
     _turn_delays(rows)
     _find_directions(rows)
-    _assign_lanes(rows)
-    rows.rung = [_has_rungs(rows, band) for band in range(len(rails) or 1)]
-    _stack_bands(rows)
     return rows
 
 
@@ -107,10 +104,6 @@ def _ladder_sums(rows: Rows) -> set[int]:
         ):
             found.add(part)
     return found
-
-
-def _only_through(sketch: Sketch, part: int, sums: set[int]) -> bool:
-    return sums.issuperset(sketch.readers(part))
 
 
 def _distances(rows: Rows, rail: Rail, forward: bool, avoided: set[int]) -> dict[int, tuple[int, int, int]]:
@@ -154,7 +147,8 @@ def _assign_bands(rows: Rows, lowered: set[int]) -> None:
                 best[part] = tie
                 rows.band[part] = band
                 rows.begin[part] = here[2] if here else None
-                rows.end[part] = there[2] if there and (part in lowered or not _only_through(sketch, part, lowered)) else None
+                towards_sums_only = part not in lowered and lowered.issuperset(sketch.readers(part))
+                rows.end[part] = there[2] if there and not towards_sums_only else None
                 rows.row[part] = max(1, here[0] if here else 0, there[0] if there else 0)
     for part in range(len(rows.sketch.parts)):
         if not rows.on_rail(part) and part not in best:
@@ -206,10 +200,12 @@ def _turn_delay(rows: Rows, delay: int) -> None:
 def _can_rise(rows: Rows, delay: int, below: int) -> bool:
     """Whether all that reads the delay, through further delays, stands above its input row."""
     sketch = rows.sketch
-    if below < 1 or any(sketch.links[link].coefficient for link in (*sketch.into[delay], *sketch.out[delay])):
+    if below < 1 or _is_scaled(sketch, delay):
         return False
     readers = sketch.readers(delay)
     while len(readers) == 1 and sketch.is_delay(readers[0]) and not rows.on_rail(readers[0]) and below > 0:
+        if _is_scaled(sketch, readers[0]):
+            return False
         readers = sketch.readers(readers[0])
         below -= 1
     return bool(readers) and all(
@@ -218,6 +214,11 @@ def _can_rise(rows: Rows, delay: int, below: int) -> bool:
         and rows.band[reader] == rows.band[delay]
         for reader in readers
     )
+
+
+def _is_scaled(sketch: Sketch, delay: int) -> bool:
+    """Whether a triangle stands right before or behind a delay: there is no room for it in a rising column."""
+    return any(sketch.links[link].coefficient is not None for link in (*sketch.into[delay], *sketch.out[delay]))
 
 
 def _goes_on_flat(rows: Rows, delay: int) -> bool:
@@ -258,7 +259,8 @@ def _find_directions(rows: Rows) -> None:
             for part in (link.source, link.target)
             if not rows.on_rail(part)
             for other in sketch.into[part]
-            if other != number and not rows.on_rail(sketch.links[other].source)
+            if other != number
+            and not rows.on_rail(sketch.links[other].source)
             and sketch.links[other].coefficient is None
             and rows.row[sketch.links[other].source] == rows.row[part]
         ]
@@ -270,87 +272,8 @@ def _find_directions(rows: Rows) -> None:
             rows.leftward[number] = bool(others) and all(others)
     for part, shape in enumerate(sketch.parts):
         if not rows.on_rail(part) and shape.kind in ("delay", "gain") and rows.facing[part] == "E":
-            ways = [rows.leftward[link] for link in sketch.out[part]] or [rows.leftward[link] for link in sketch.into[part]]
+            ways = [rows.leftward[link] for link in sketch.out[part]] or [
+                rows.leftward[link] for link in sketch.into[part]
+            ]
             if ways and sum(ways) * 2 >= len(ways):
                 rows.facing[part] = "W"
-
-
-def _span(rows: Rows, part: int) -> tuple[float, float]:
-    """The stretch of the rail above an off-rail part, in rail numbers; taps stand half a number on."""
-    begin, end = rows.begin[part], rows.end[part]
-    first = begin + 0.5 if begin is not None else (end if end is not None else 0.0)
-    last = float(end) if end is not None else first
-    return min(first, last), max(first, last)
-
-
-def _assign_lanes(rows: Rows) -> None:
-    """Links from rail to rail, and single inputs, get the first free row below, or above if that port is taken."""
-    sketch = rows.sketch
-    taken: dict[tuple[int, int], list[tuple[float, float]]] = {}
-    for part, shape in enumerate(sketch.parts):
-        if not rows.on_rail(part) and shape.kind not in ("output", "input"):
-            taken.setdefault((rows.band[part], rows.row[part]), []).append(_span(rows, part))
-    above: set[int] = set()
-    for part, shape in enumerate(sketch.parts):
-        if shape.kind == "input" and not rows.on_rail(part):
-            end = rows.end[part]
-            span = (-1.0, 0.0 if end is None else float(end))
-            rows.row[part] = _free_row(taken, rows.band[part], span, 1)
-    for number, link in enumerate(sketch.links):
-        if not rows.off_rail_link(number):
-            continue
-        source, target = rows.place[link.source], rows.place[link.target]
-        if source is None or target is None or source[0] != target[0]:
-            continue
-        ends = (source[1] + 0.5, float(target[1]))
-        others = [other for other in sketch.into[link.target] if other != number and rows.off_rail_link(other)]
-        below = [other for other in others if other in rows.lanes or not _is_lane(rows, other)]
-        step = -1 if below and link.target not in above and sketch.parts[link.target].kind == "adder" else 1
-        if step < 0:
-            above.add(link.target)
-        rows.lanes[number] = _free_row(taken, source[0], (min(ends), max(ends)), step)
-
-
-def _is_lane(rows: Rows, link: int) -> bool:
-    source, target = rows.place[rows.sketch.links[link].source], rows.place[rows.sketch.links[link].target]
-    return source is not None and target is not None and source[0] == target[0]
-
-
-def _free_row(
-    taken: dict[tuple[int, int], list[tuple[float, float]]], band: int, span: tuple[float, float], step: int
-) -> int:
-    row = step
-    while any(max(low, span[0]) < min(high, span[1]) for low, high in taken.get((band, row), [])):
-        row += step
-    taken.setdefault((band, row), []).append(span)
-    return row
-
-
-def _has_rungs(rows: Rows, band: int) -> bool:
-    """Whether a row of lying delays hangs below the rail, so that gains stand upright between the two."""
-    return any(
-        shape.kind == "delay"
-        and rows.band[part] == band
-        and not rows.on_rail(part)
-        and rows.row[part] == 1
-        and rows.facing[part] in ("E", "W")
-        for part, shape in enumerate(rows.sketch.parts)
-    )
-
-
-def _stack_bands(rows: Rows) -> None:
-    """Band below band, each as high as its rows and lanes need."""
-    bands = len(rows.rung)
-    lowest, highest = [0] * bands, [0] * bands
-    for part in range(len(rows.sketch.parts)):
-        if rows.sketch.parts[part].kind != "output" or rows.on_rail(part):
-            lowest[rows.band[part]] = max(lowest[rows.band[part]], rows.row[part])
-    for link, row in rows.lanes.items():
-        band = rows.band[rows.sketch.links[link].source]
-        lowest[band] = max(lowest[band], row)
-        highest[band] = min(highest[band], row)
-    line = 0
-    for band in range(bands):
-        line -= 2 * highest[band]
-        rows.base.append(line)
-        line += 2 * lowest[band] + 2 + rows.rung[band]

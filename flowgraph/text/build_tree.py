@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from typing import TypeAlias
 
 from lark import Token, Transformer
@@ -11,6 +10,7 @@ from flowgraph.text import syntax as s
 from flowgraph.text.exact import LEVELS, exact_number
 
 Limits: TypeAlias = tuple[s.Expr | None, s.Expr | None]
+Response: TypeAlias = tuple[s.Reference, s.Reference]
 Starts: TypeAlias = tuple[tuple[s.Expr, ...], bool]
 
 
@@ -64,18 +64,19 @@ class TreeBuilder(Transformer[Token, s.Node]):
         factors: list[s.Factor] = []
         negative = signed = divides = False
         for part in parts:
+            mark = part.value if isinstance(part, Token) else ""
             if not isinstance(part, Token):
                 factors.append(s.Factor(divides, part))
-            elif part.type == "STAR":
+            elif mark == "*":
                 divides = False
-            elif part.type == "SLASH":
+            elif mark == "/":
                 divides = True
             else:
                 if factors:
                     terms.append(s.Signed(negative, _group(factors)))
                     factors = []
                 divides = False
-                negative = part.type == "MINUS"
+                negative = mark == "-"
                 signed = True
         last = _group(factors)
         if not signed:
@@ -87,14 +88,14 @@ class TreeBuilder(Transformer[Token, s.Node]):
 
     def power(self, parts: tuple[s.Expr, Token | None, s.Expr]) -> s.Raised:
         base, sign, exponent = parts
-        height = exponent.height + 1 if isinstance(exponent, s.Raised) else 1
+        height = max(_height(base), _height(exponent) + 1)
         if height > LEVELS:
             raise MisplacedError(
                 "too-deep", f"more than {LEVELS} powers on top of each other", "", base.start, exponent.end
             )
         if sign is not None:
             start = self.origin + (sign.start_pos or 0)
-            exponent = s.Total((s.Signed(sign.type == "MINUS", exponent),), start, exponent.end)
+            exponent = s.Total((s.Signed(sign.value == "-", exponent),), start, exponent.end)
         return s.Raised(base, exponent, height, base.start, exponent.end)
 
     def bracket(self, parts: tuple[Token, s.Expr, Token]) -> s.Bracket:
@@ -123,6 +124,13 @@ class TreeBuilder(Transformer[Token, s.Node]):
 
     def histories(self, parts: list[s.Reference | s.Expr]) -> tuple[tuple[s.Reference, s.Expr], ...]:
         return tuple(zip(parts[0::2], parts[1::2], strict=True))  # type: ignore[arg-type]
+
+    def response(self, parts: tuple[s.Reference, Token, s.Reference]) -> Response:
+        output, mark, input_ = parts
+        if mark.value != "/":
+            at = self.origin + (mark.start_pos or 0)
+            raise MisplacedError("syntax", f"{mark.value} cannot stand here", "write output / input", at, at + 1)
+        return output, input_
 
     def by(self, parts: tuple[s.Expr]) -> s.Expr:
         return parts[0]
@@ -248,24 +256,48 @@ class TreeBuilder(Transformer[Token, s.Node]):
     def equation(self, parts: tuple[s.Reference, s.Expr, tuple[tuple[s.Reference, s.Expr], ...]]) -> s.Node:
         return s.EquationLine(*parts)
 
-    def ratio(self, parts: tuple[s.Reference, s.Reference, s.Expr, s.Expr | None]) -> s.Node:
-        return s.RatioLine(*parts)
+    def ratio(self, parts: tuple[Response, s.Expr, s.Expr | None]) -> s.Node:
+        (output, input_), ratio, late = parts
+        return s.RatioLine(output, input_, ratio, late)
 
     def same_as(self, parts: tuple[s.Reference, s.Application]) -> s.Node:
         return s.SameAsLine(*parts)
 
-    def stable(self, parts: Sequence[s.Word | None]) -> s.Node:
-        return s.StableLine(_number(parts[0]))
+    def require(self, parts: tuple[s.Word | None, s.RequirementNode]) -> s.Node:
+        number, requirement = parts
+        return requirement if number is None else requirement._replace(number=number.text)
 
-    def bounded(self, parts: tuple[s.Word | None, s.Reference, s.Reference]) -> s.Node:
-        return s.BoundedLine(_number(parts[0]), parts[1], parts[2])
+    def stable(self, parts: list[Token]) -> s.Node:
+        return s.StableLine("")
 
-    def gain_limit(self, parts: tuple[s.Word | None, s.Reference, s.Reference, s.Expr, Limits]) -> s.Node:
-        number, output, input_, frequency, (lowest, highest) = parts
-        return s.GainLimitLine(_number(number), output, input_, frequency, lowest, highest)
+    def bounded(self, parts: tuple[Response]) -> s.Node:
+        return s.BoundedLine("", *parts[0])
 
-    def count_limit(self, parts: tuple[s.Word | None, Token, s.Expr]) -> s.Node:
-        return s.CountLine(_number(parts[0]), str(parts[1]), parts[2])
+    def gain_limit(self, parts: tuple[Response, s.Expr, Limits]) -> s.Node:
+        (output, input_), frequency, (lowest, highest) = parts
+        return s.GainLimitLine("", output, input_, frequency, lowest, highest)
+
+    def count_limit(self, parts: tuple[Token, s.Expr]) -> s.Node:
+        return s.CountLine("", str(parts[0]), parts[1])
+
+
+def _height(expr: s.Expr) -> int:
+    """How many powers stand on top of each other in an expression; each power knows it of itself."""
+    match expr:
+        case s.Raised():
+            return expr.height
+        case s.Total(terms):
+            return max(_height(body) for _, body in terms)
+        case s.Scaled(factors):
+            return max(_height(body) for _, body in factors)
+        case s.Bracket(inner) | s.Call(_, inner):
+            return _height(inner)
+        case s.Fold(_, _, first, last, body):
+            return max(_height(first), _height(last), _height(body))
+        case s.Reference(_, parts):
+            return max((_height(part.place) for part in parts if isinstance(part, s.At)), default=0)
+        case s.Figure() | s.CountOf():
+            return 0
 
 
 def _group(factors: list[s.Factor]) -> s.Expr:
@@ -273,10 +305,6 @@ def _group(factors: list[s.Factor]) -> s.Expr:
     if len(factors) == 1:
         return factors[0].body
     return s.Scaled(tuple(factors), factors[0].body.start, factors[-1].body.end)
-
-
-def _number(word: s.Word | None) -> str:
-    return "" if word is None else word.text
 
 
 def later(what: str, start: int, end: int) -> MisplacedError:

@@ -30,7 +30,7 @@ from flowgraph.text.meaning import full_name, undefined
 from flowgraph.text.place import given
 from flowgraph.text.program import Elaborated, Program
 from flowgraph.text.rules import judge
-from flowgraph.text.scope import Env, Fault, Scope
+from flowgraph.text.scope import Fault, Scope
 from flowgraph.text.signals import signal
 from flowgraph.text.words import names_in_text
 
@@ -53,7 +53,7 @@ class _Elaboration:
     claims: list[Claim] = field(default_factory=list)
     claim_reads: set[str] = field(default_factory=set)
     unused: dict[str, s.Reference] = field(default_factory=dict)
-    rows: list[tuple[s.Row, Env]] = field(default_factory=list)
+    rows: list[list[tuple[str, s.Reference]]] = field(default_factory=list)
     page: dict[str, list[str]] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
@@ -134,8 +134,8 @@ class _Elaboration:
             case s.Unused(names):
                 for name in names:
                     self.unused.setdefault(full_name(scope, name, env), name)
-            case s.Row():
-                self.rows.append((line.node, env))
+            case s.Row(names):
+                self.rows.append([(full_name(scope, name, env), name) for name in names])
             case s.PageLine(kind, word):
                 said = self.page.setdefault(kind, [])
                 if said and kind != "note":
@@ -185,7 +185,7 @@ class _Elaboration:
             self.coefficients,
             tuple(self.claims),
             scope.rate,
-            tuple([self._row(row, env) for row, env in self.rows]),
+            tuple([self._row(row) for row in self.rows]),
             "\n".join(self.page.get("title", [])),
             "\n".join(self.page.get("version", [])),
             tuple(self.page.get("note", [])),
@@ -205,12 +205,11 @@ class _Elaboration:
                 f"add adder {full} = .., or write output {full} = .. with the signal it shows",
             )
 
-    def _row(self, row: s.Row, env: Env) -> tuple[str, ...]:
+    def _row(self, row: list[tuple[str, s.Reference]]) -> tuple[str, ...]:
         """The elements of a row, wires followed; a name that is none is told."""
         scope = self.scope
         names: list[str] = []
-        for reference in row.names:
-            name = full_name(scope, reference, env)
+        for name, reference in row:
             signal = scope.signals.get(name) or scope.followed.get(name)
             if name in self.elements or name in scope.ports:
                 names.append(name)

@@ -26,11 +26,11 @@ _MARKS = {
     "STRING": 'a text in " "',
     "NAME": "a name",
     "NUMBER": "a number",
+    "OPERATOR": "an operator",
     "COUNTED": "cells or multiplies",
     "DB": "dB",
 }
 _DEFINE = "const|adder|gain|wire|delay|use|cascade|repeat"
-_OPERATORS = ("PLUS", "MINUS", "STAR", "SLASH")
 _BEFORE = re.compile(r"([A-Za-z_][A-Za-z0-9_]*|[0-9][0-9_.]*|\S)\s*\Z")
 
 
@@ -158,15 +158,13 @@ def _may_stand(expected: set[str]) -> str:
     """What the grammar would take, in a few words."""
     if {"NUMBER", "NAME", "FUNCTION"} <= expected:
         return "here a name, a number or a bracket is expected"
-    words = [text for name, text in _MARKS.items() if name in expected and name not in _OPERATORS]
+    words = [text for name, text in _MARKS.items() if name in expected]
     words += sorted(
         name.lower() for name in expected if name.isalpha() and name not in _MARKS and name not in _NO_WORDS
     )
-    if len([name for name in expected if name in _OPERATORS]) == len(_OPERATORS):
-        words.append("an operator")
     if not words or len(words) > 8:
         return ""
     return f"here {' or '.join(words)} is expected"
 
 
-_NO_WORDS = ("PLUS", "MINUS", "STAR", "SLASH", "UNIT", "COUNT", "FUNCTION", "FOLD", "COMMENT", "SPACE")
+_NO_WORDS = ("SIGN", "UNIT", "COUNT", "FUNCTION", "FOLD", "COMMENT", "SPACE")

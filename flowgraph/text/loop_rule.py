@@ -5,38 +5,30 @@ from __future__ import annotations
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Adder, Element, Gain
 from flowgraph.diagram.index import Index
-from flowgraph.diagram.structure import MOST_LOOPS, delay_free_loops
+from flowgraph.diagram.structure import delay_free_loops
 from flowgraph.source.diagnostic import Diagnostic, Note
 from flowgraph.source.span import Span
 from flowgraph.text.scope import Scope
 
 SHOWN = 20
+"""The most loops that are told."""
+LONGEST_PATH = 200
+"""The most wires of one loop that are told one by one."""
 
 
 def judge_loops(scope: Scope, diagram: Diagram, view: Index) -> None:
     """Tells the loops of this diagram; those that lie inside a used diagram are told there."""
-    found: list[list[str]] = []
-    more = 0
+    told = 0
     for loop in delay_free_loops(view):
         names = [view.names[at] for at in loop]
         if _inside_use(scope, names):
             continue
-        if len(found) < SHOWN:
-            found.append(names)
-        else:
-            more += 1
-    for names in found:
+        if told == SHOWN:
+            message = f"there are more loops without a delay than these {SHOWN}"
+            scope.tell(Diagnostic("more-loops", message, diagram.span, help="mend those told first"))
+            break
         scope.findings.append(_loop(diagram, names))
-    if more:
-        count = f"more than {more}" if len(found) + more >= MOST_LOOPS else str(more)
-        scope.tell(
-            Diagnostic(
-                "loops-more",
-                f"{count} more loops without a delay are not shown",
-                diagram.span,
-                help="mend those shown first",
-            )
-        )
+        told += 1
 
 
 def _inside_use(scope: Scope, names: list[str]) -> bool:
@@ -53,6 +45,9 @@ def _loop(diagram: Diagram, names: list[str]) -> Diagnostic:
         for name, reader in zip(names, following, strict=True)
     )
     path = " -> ".join([*names, names[0]])
+    if len(names) > LONGEST_PATH:
+        path = " -> ".join([*names[:3], f".. ({len(names)} elements)", names[-1], names[0]])
+        notes = (*notes[:LONGEST_PATH], Note(f"and {len(names) - LONGEST_PATH} wires more"))
     last = names[-1]
     cell = f"{last.replace('.', '_').replace('[', '_').replace(']', '')}1"
     return Diagnostic(

@@ -222,8 +222,8 @@ def _product(factors: list[Expression]) -> Expression:
 
 def _raised(scope: Scope, expr: s.Raised, env: Env, leaf: Leaf) -> Expression:
     base = expression(scope, expr.base, env, leaf)
-    exponent, seconds = fixed(scope, expr.exponent, env)
     at = expr.exponent
+    exponent, seconds = fixed(scope, at, env)
     if seconds:
         raise scope.fault("units", "an exponent is a plain number", at.start, at.end)
     if exponent.denominator != 1 and base != Number(Fraction(10)):
@@ -248,6 +248,8 @@ def const_leaf(scope: Scope, reference: s.Reference, env: Env) -> Expression:
     name = full_name(scope, reference, env)
     if name in scope.broken or reference.name in scope.broken:
         raise scope.silent()
+    if name == "n":
+        raise scope.fault("time-index", "n stands only in intents", reference.start, reference.end)
     close = nearest(name, list(scope.consts))
     raise scope.fault(
         "not-const",
@@ -323,4 +325,4 @@ def undefined(scope: Scope, name: str, at: s.Reference | s.Word) -> Fault:
     known = list(dict.fromkeys([*scope.kinds, *scope.defined]))
     close = nearest(name, known)
     mend = f"did you mean {close}?" if close else "define it, or correct the name"
-    return scope.fault("undefined", f"{name} is not defined", at.start, at.end, mend)
+    return scope.fault("undefined", f"{name[:80]} is not defined", at.start, at.end, mend)

@@ -295,6 +295,7 @@ class CountLine(NamedTuple):
     highest: Expr
 
 
+RequirementNode: TypeAlias = StableLine | BoundedLine | GainLimitLine | CountLine
 ClaimNode: TypeAlias = EquationLine | RatioLine | SameAsLine | StableLine | BoundedLine | GainLimitLine | CountLine
 DefiningNode: TypeAlias = InputLine | OutputOf | AdderLine | GainLine | WireLine | DelayLine | UseLine | CascadeLine
 Node: TypeAlias = (

@@ -120,14 +120,14 @@ def test_a_proof_lists_the_values_it_leaves_out() -> None:
 
 def test_a_ratio_that_no_diagram_can_have_is_refuted() -> None:
     """A response cannot begin before its cause."""
-    from flowgraph.diagram.claim import RatioIntent
     from flowgraph.claims.intents import verdict_on_intent
+    from flowgraph.diagram.claim import RatioIntent
     from flowgraph.diagram.expression import Name
 
     diagram = read_diagram(lag("intent y / x = 1/(1 - r*z^-1)"))
     verdict = verdict_on_intent(RatioIntent("y", "x", Name("z")), diagram)
     assert verdict.outcome == "refuted"
-    assert verdict.reason == "no diagram can do this: the ratio is not causal"
+    assert verdict.reason == "no diagram can meet this claim: the ratio is not causal"
 
 
 def test_several_inputs_and_outputs_are_told_apart() -> None:
@@ -221,7 +221,9 @@ def test_requirements_of_an_open_diagram_are_judged_at_each_use() -> None:
 def test_a_gain_limit_that_is_met_exactly_is_decided_exactly() -> None:
     """0 dB at 0 Hz is met by a normalised lag, and not by one that is off by 10^-40."""
     lagged = "adder y = 1/4*x + 3/4*y1"
-    text = f"diagram d {{\nrate 1 kHz\ninput x\noutput y\n{lagged}\ndelay y1 = y\nrequire gain y / x at 0 Hz >= 0 dB\n}}"
+    text = (
+        f"diagram d {{\nrate 1 kHz\ninput x\noutput y\n{lagged}\ndelay y1 = y\nrequire gain y / x at 0 Hz >= 0 dB\n}}"
+    )
     assert first(text).outcome == "proved"
     assert first(text.replace("1/4*x", "0.2499999999999999999999999999999999999999*x")).outcome == "refuted"
 

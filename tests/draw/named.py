@@ -129,7 +129,9 @@ PI_LOOP = board(
     "input r; input m; output u; adder e = r - m; adder i = i1 + Ki*e; delay i1 = i; adder u = Kp*e + i",
     title="PI loop",
 )
-OSCILLATOR = board("oscillator", "output y; adder y = c*y1 - y2; delay y1 = y; delay y2 = y1", title="Oscillator")
+OSCILLATOR = board(
+    "oscillator", "output y; adder y = c*y1 - y2; delay y1 = y starts 1; delay y2 = y1", title="Oscillator"
+)
 TWO_BY_TWO = board(
     "two_by_two",
     "input u1; input u2; output y1; output y2; adder y1 = u1 + c*d1 - s*d2; adder y2 = u2 + s*d1 + c*d2",
@@ -173,7 +175,7 @@ TWO_LINES = board(
     "adder y = b0*w + b1*q1 + b2*q2",
     title="Direct form II, two lines",
 )
-WIRE = board("wire", "input x; output y = x", title="A wire")
+WIRE = board("straight", "input x; output y = x", title="A wire")
 
 FOLDED_FIR = board(
     "folded_fir",
@@ -211,7 +213,7 @@ DRIFT = board(
     "input level; output slope; delay level1 = level; delay slope1 = slope; adder slope = level - level1 + r*slope1",
     title="Drift remover",
 )
-LATE = board("late", "input x; output y; delay a = x; delay y0 = a; output y = y0", title="Two samples late")
+LATE = board("late", "input x; delay a = x; delay y0 = a; output y = y0", title="Two samples late")
 CASCADE_TDF2 = board(
     "cascade_tdf2",
     "input x; output y; adder v = b01*x + s1; delay s1 = t1; adder t1 = b11*x - a11*v + s2; delay s2 = t2",

@@ -126,9 +126,7 @@ def feedback_below(picture: Picture, diagram: Diagram) -> list[str]:
         return []
     first = diagram.inputs()[0].name
     line = next(label.y for label in picture.labels if label.role == "port" and label.of == first)
-    below = {
-        wire.target for wire in picture.wires if wire.arrow and wire.points[-2][1] > wire.points[-1][1] > line - 1
-    }
+    below = {wire.target for wire in picture.wires if wire.arrow and wire.points[-2][1] > wire.points[-1][1] > line - 1}
     return [
         f"the way from {wire.source} to {wire.target} runs back above the forward path"
         for wire in picture.wires
@@ -231,7 +229,9 @@ def gains_in_line(picture: Picture, diagram: Diagram) -> list[str]:
 
 def signs_and_circles(picture: Picture, diagram: Diagram) -> list[str]:
     """A minus for every subtracted term, at an arrowhead of its own; every circle has two inputs or more."""
-    meant = sum(term.negative for element in diagram.elements.values() if isinstance(element, Adder) for term in element.terms)
+    meant = sum(
+        term.negative for element in diagram.elements.values() if isinstance(element, Adder) for term in element.terms
+    )
     signs = [label for label in picture.labels if label.role == "sign"]
     found = [] if len(signs) == meant else [f"{len(signs)} minus signs for {meant} subtracted terms"]
     arrows = [id(nearest_arrow(picture, sign)) for sign in signs]
@@ -299,11 +299,27 @@ def no_connectors(picture: Picture, diagram: Diagram) -> list[str]:
 
 Rule = Callable[[Picture, Diagram], list[str]]
 
-CORRECT: tuple[Rule, ...] = (means_the_same, level_and_upright, no_wire_through_symbols, nets_keep_apart, dots_at_branches)
+CORRECT: tuple[Rule, ...] = (
+    means_the_same,
+    level_and_upright,
+    no_wire_through_symbols,
+    nets_keep_apart,
+    dots_at_branches,
+)
 BAR: tuple[Rule, ...] = (
-    *CORRECT, no_connectors, ports_at_margins, straight_forward_path, feedback_below, arrows_only_at_entries, gains_in_line,
-    signs_and_circles, labels_are_clear, symbols_keep_apart, legible, every_coefficient_once,
-)  # fmt: skip
+    *CORRECT,
+    no_connectors,
+    ports_at_margins,
+    straight_forward_path,
+    feedback_below,
+    arrows_only_at_entries,
+    gains_in_line,
+    signs_and_circles,
+    labels_are_clear,
+    symbols_keep_apart,
+    legible,
+    every_coefficient_once,
+)
 
 
 def faults(picture: Picture, diagram: Diagram, rules: tuple[Rule, ...] = BAR) -> list[str]:

@@ -41,7 +41,7 @@ def random_board(size: int, seed: int) -> Diagram:
             unread = [other for other in unread if other != source] + [name]
         elif kind == "gain":
             source = dice.pick(unread or earlier)
-            lines.append(f"gain {name} = g{at}*{source}")
+            lines.append(f"gain {name} = k{at}*{source}")
             unread = [other for other in unread if other != source] + [name]
         else:
             choices = list(dict.fromkeys([*unread[:2], dice.pick(earlier), dice.pick([*delays, *earlier])]))
@@ -50,7 +50,7 @@ def random_board(size: int, seed: int) -> Diagram:
             if len(choices) < 2:
                 choices = list(dict.fromkeys([*choices, "x", *earlier]))[:2]
             if len(choices) < 2:
-                lines.append(f"gain {name} = g{at}*x")
+                lines.append(f"gain {name} = k{at}*x")
                 unread = [other for other in unread if other != "x"] + [name]
                 continue
             terms = []

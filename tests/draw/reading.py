@@ -29,7 +29,7 @@ class End:
 
 @dataclass
 class Read:
-    """`starts[group]` is where a group of wires starts; `enters` are (group, end, is subtracted, factor) for every arrival.
+    """`starts[group]` is where a group of wires starts; `enters` are all arrivals: (group, end, is subtracted, factor).
 
     The factor is the label of a coefficient that stands at an arrow or a connector without a triangle, or nothing.
     """
@@ -244,32 +244,30 @@ def intended(diagram: Diagram, values: Mapping[str, Fraction], samples: int) -> 
     for source in diagram.inputs():
         cells = {delay.name: [Fraction(0)] * delay.length for delay in diagram.delays()}
         for n in range(samples):
-            known: dict[str, Fraction] = {}
-
-            def value(signal: Signal, known: dict[str, Fraction] = known, n: int = n) -> Fraction:
-                if signal.name in cells:
-                    return cells[signal.name][signal.tap - 1]
-                if signal.name not in known:
-                    total = Fraction(0)
-                    match diagram.elements[signal.name]:
-                        case Input(name):
-                            total = Fraction(int(name == source.name and n == 0))
-                        case Gain(_, coefficient, read_signal):
-                            total = values[coefficient_label(coefficient)] * value(read_signal)
-                        case Adder(_, terms):
-                            for term in terms:
-                                scale = values[coefficient_label(term.coefficient)] if term.coefficient else Fraction(1)
-                                total += (-1 if term.negative else 1) * scale * value(term.signal)
-                    known[signal.name] = total
-                return known[signal.name]
-
+            known = {Signal(port.name): Fraction(int(port is source and n == 0)) for port in diagram.inputs()}
+            known |= {Signal(name, tap + 1): cell for name, line in cells.items() for tap, cell in enumerate(line)}
             for name, output in diagram.outputs.items():
-                answers.setdefault((source.name, name), []).append(value(output.signal))
-            incoming = {delay.name: value(delay.signal) for delay in diagram.delays()}
+                answers.setdefault((source.name, name), []).append(sample(diagram, values, known, output.signal))
+            incoming = {delay.name: sample(diagram, values, known, delay.signal) for delay in diagram.delays()}
             for name, line in cells.items():
                 line.insert(0, incoming[name])
                 line.pop()
     return answers
+
+
+def sample(diagram: Diagram, values: Mapping[str, Fraction], known: dict[Signal, Fraction], signal: Signal) -> Fraction:
+    """The value of a signal in this sample, from those of inputs and cells; what is found is remembered."""
+    if signal not in known:
+        total = Fraction(0)
+        match diagram.elements[signal.name]:
+            case Gain(_, coefficient, source):
+                total = values[coefficient_label(coefficient)] * sample(diagram, values, known, source)
+            case Adder(_, terms):
+                for term in terms:
+                    scale = values[coefficient_label(term.coefficient)] if term.coefficient else Fraction(1)
+                    total += (-scale if term.negative else scale) * sample(diagram, values, known, term.signal)
+        known[signal] = total
+    return known[signal]
 
 
 def label_values(diagram: Diagram) -> dict[str, Fraction]:

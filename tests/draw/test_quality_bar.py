@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import pytest
 from named import (
     ALL_POLE_LATTICE,
@@ -136,6 +138,6 @@ def test_long_cascade_keeps_the_shape_of_its_sections() -> None:
     delays = shapes(picture, "delay")
     xs = sorted({delay.x for delay in delays})
     assert len(xs) == 20
-    assert len({after - before for before, after in zip(xs, xs[1:], strict=False)}) == 1
+    assert len({after - before for before, after in pairwise(xs)}) == 1
     assert crossings(picture) == []
     assert picture.connectors == ()

@@ -9,7 +9,9 @@ from random_boards import random_board
 from flowgraph.draw.draw import draw_picture
 
 
-@pytest.mark.parametrize(("size", "seed"), [(6, seed) for seed in range(8)] + [(9, 0), (9, 1), (9, 2), (9, 4), (12, 0), (12, 1)])
+@pytest.mark.parametrize(
+    ("size", "seed"), [(6, seed) for seed in range(8)] + [(9, 0), (9, 1), (9, 2), (9, 4), (12, 0), (12, 1)]
+)
 def test_random_diagram_reads_back_as_itself(size: int, seed: int) -> None:
     """Every wire is drawn (or named at both ends), none through a symbol, no two nets share a segment."""
     diagram = random_board(size, seed)
