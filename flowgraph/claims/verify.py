@@ -45,19 +45,30 @@ def _at_uses(diagram: Diagram) -> list[Verdict]:
         return []
     verdicts: list[Verdict] = []
     judged: set[tuple[str, str]] = set()
-    for use in diagram.uses:
-        claims = [
-            claim
+    for use in _open_uses(diagram):
+        values = repr([diagram.coefficients[f"{use.path}.{name}"].value for name in use.diagram.coefficients])
+        if (use.diagram.name, values) in judged:
+            continue
+        judged.add((use.diagram.name, values))
+        there = at_use(use, diagram)
+        verdicts.extend(
+            verdict_on_requirement(claim, there, use.span)
             for claim in use.diagram.claims
             if isinstance(claim, StableRequirement | BoundedRequirement | GainRequirement)
-        ]
-        given = (use.diagram.name, repr(sorted((name, repr(value)) for name, value in use.bindings.items())))
-        if not claims or not use.bindings or given in judged:
-            continue
-        judged.add(given)
-        there = at_use(use, diagram)
-        verdicts.extend(verdict_on_requirement(claim, there, use.span) for claim in claims)
+        )
     return verdicts
+
+
+def _open_uses(diagram: Diagram) -> list[Use]:
+    """All uses of diagrams with open coefficients, at any depth, by their whole path."""
+    found: list[Use] = []
+    waiting = list(reversed(diagram.uses))
+    while waiting:
+        use = waiting.pop()
+        if _is_open(use.diagram):
+            found.append(use)
+            waiting.extend(replace(inner, path=f"{use.path}.{inner.path}") for inner in reversed(use.diagram.uses))
+    return found
 
 
 def at_use(use: Use, user: Diagram) -> Diagram:

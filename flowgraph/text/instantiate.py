@@ -7,7 +7,7 @@ from dataclasses import replace
 
 from flowgraph.diagram.claim import Claim, EquationIntent, RatioIntent
 from flowgraph.diagram.diagram import Coefficient, Diagram
-from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Signal, Term
+from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Signal, Term, with_expressions
 from flowgraph.diagram.expression import Expression, names_in, rename
 
 
@@ -93,25 +93,7 @@ def with_renamed_coefficients(diagram: Diagram, names: dict[str, str]) -> Diagra
     def placed(expression: Expression) -> Expression:
         return rename(expression, names)
 
-    elements: dict[str, Element] = {}
-    for name, element in diagram.elements.items():
-        match element:
-            case Adder(terms=terms):
-                elements[name] = replace(
-                    element,
-                    terms=tuple(
-                        [
-                            term if term.coefficient is None else replace(term, coefficient=placed(term.coefficient))
-                            for term in terms
-                        ]
-                    ),
-                )
-            case Gain():
-                elements[name] = replace(element, coefficient=placed(element.coefficient))
-            case Delay():
-                elements[name] = replace(element, starts=tuple([placed(start) for start in element.starts]))
-            case Input():
-                elements[name] = element
+    elements = {name: with_expressions(element, placed) for name, element in diagram.elements.items()}
     coefficients = {
         names.get(name, name): replace(
             found, name=names.get(name, name), value=None if found.value is None else placed(found.value)

@@ -218,6 +218,36 @@ def test_requirements_of_an_open_diagram_are_judged_at_each_use() -> None:
     assert verdicts[2].use.line == verdicts[2].span.line + 6
 
 
+def test_requirements_inside_a_used_diagram_are_judged_through_its_user() -> None:
+    """A section two uses deep gets its values from the outermost diagram."""
+    text = """
+        diagram pole {
+            coef a
+            input x
+            output y
+            adder y = x + a*y1
+            delay y1 = y
+            intent y / x = 1/(1 - a*z^-1)
+            require stable
+        }
+        diagram pair {
+            coef a
+            input x
+            output y
+            use p = pole(x) with a = a
+            use y = pole(p) with a = 2*a
+            intent y / x = 1/((1 - a*z^-1)*(1 - 2*a*z^-1))
+        }
+        diagram user {
+            input x
+            output y
+            use y = pair(x) with a = 0.75
+            intent y / x = 1/((1 - 0.75*z^-1)*(1 - 1.5*z^-1))
+        }"""
+    verdicts = verify(read_diagrams(text)["user"])
+    assert [verdict.outcome for verdict in verdicts] == ["proved", "proved", "refuted"]
+
+
 def test_a_gain_limit_that_is_met_exactly_is_decided_exactly() -> None:
     """0 dB at 0 Hz is met by a normalised lag, and not by one that is off by 10^-40."""
     lagged = "adder y = 1/4*x + 3/4*y1"
