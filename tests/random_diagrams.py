@@ -4,12 +4,13 @@ from __future__ import annotations
 
 from fractions import Fraction
 
+from exact_values import exact_values
 from hypothesis import strategies as st
 
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Output, Signal, Term
 from flowgraph.diagram.expression import Expression, Number
-from flowgraph.diagram.simulate import exact_values, simulate
+from flowgraph.diagram.simulate import simulate
 
 DYADIC_GAIN = st.sampled_from([Number(Fraction(text)) for text in ("1/2", "-1/2", "1", "-1", "2", "-2")])
 SAMPLES = 12

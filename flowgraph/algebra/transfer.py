@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import reduce
 
 from flint import acb, fmpq, fmpq_mpoly, fmpq_poly, fmpz_poly
 
@@ -21,6 +22,14 @@ class NamedTransfer:
 
     numerator: tuple[str, ...]
     denominator: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class NamedEquation:
+    """denominator * output = sum of numerators * inputs; coefficients of rising powers of w as in NamedTransfer."""
+
+    denominator: tuple[str, ...]
+    numerators: dict[str, tuple[str, ...]]
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,23 +55,57 @@ def named_transfers(diagram: Diagram) -> dict[tuple[str, str], NamedTransfer]:
     return {pair: _named(*response, ring) for pair, response in behaviour.responses(ring, pairs).items()}
 
 
+def named_equations(diagram: Diagram) -> dict[str, NamedEquation]:
+    """One difference equation for every output that an input reaches, all responses over one denominator.
+
+    Raises TooLarge where the polynomials would not fit a page, and much more.
+    """
+    behaviour = DiagramBehaviour(diagram)
+    ring = exact_ring(diagram.coefficients, behaviour.expressions())
+    inputs = [port.name for port in diagram.inputs()]
+    responses = behaviour.responses(ring, [(output, source) for output in diagram.outputs for source in inputs])
+    equations: dict[str, NamedEquation] = {}
+    for output in diagram.outputs:
+        # All responses of one output stand over the same determinants, those on the way to it.
+        uppers = {source: responses[(output, source)][0] for source in inputs}
+        reached = {source: upper for source, upper in uppers.items() if upper != ring.zero}
+        if reached:
+            lower = _product(responses[(output, inputs[0])][1], ring)
+            *numerators, denominator = _in_lowest_terms([*reached.values(), lower], ring)
+            equations[output] = NamedEquation(denominator, dict(zip(reached, numerators, strict=True)))
+    return equations
+
+
 def _named(upper: Polynomial, lowers: list[Polynomial], ring: ExactRing[Polynomial]) -> NamedTransfer:
-    lower = ring.one
-    for factor in lowers:
-        lower = ring.times(lower, factor)
-    if isinstance(upper, fmpq_poly) and isinstance(lower, fmpq_poly):
-        reduced = _lowest_terms(upper, lower)
-        return NamedTransfer(_strings(reduced.numerator), _strings(reduced.denominator))
-    numerator, denominator = ring.cleared(upper, lower)
-    assert isinstance(ring, SymbolPolynomials)
-    assert isinstance(numerator, fmpq_mpoly)
-    assert isinstance(denominator, fmpq_mpoly)
-    shared = numerator.gcd(denominator)
-    numerator, denominator = numerator // shared, denominator // shared
-    scale = _least_whole_factor(denominator)
-    if denominator.leading_coefficient() < 0:
-        scale = -scale
-    return NamedTransfer(_by_power(numerator * scale, ring), _by_power(denominator * scale, ring))
+    numerator, denominator = _in_lowest_terms([upper, _product(lowers, ring)], ring)
+    return NamedTransfer(numerator, denominator)
+
+
+def _product(factors: list[Polynomial], ring: ExactRing[Polynomial]) -> Polynomial:
+    product = ring.one
+    for factor in factors:
+        product = ring.times(product, factor)
+    return product
+
+
+def _in_lowest_terms(polynomials: list[Polynomial], ring: ExactRing[Polynomial]) -> list[tuple[str, ...]]:
+    """The polynomials without their common factor, by rising powers; the last, a denominator, starts simply.
+
+    With numbers alone its constant term is 1; with names all its coefficients are whole.
+    """
+    cleared = ring.cleared(*polynomials)
+    if isinstance(ring, SymbolPolynomials):
+        parts = [part for part in cleared if isinstance(part, fmpq_mpoly)]
+        shared = reduce(fmpq_mpoly.gcd, parts)
+        parts = [part // shared for part in parts]
+        scale = _least_whole_factor(parts[-1])
+        if parts[-1].leading_coefficient() < 0:
+            scale = -scale
+        return [_by_power(part * scale, ring) for part in parts]
+    numbers = [part for part in cleared if isinstance(part, fmpq_poly)]
+    common = reduce(fmpq_poly.gcd, numbers)
+    numbers = [part // common for part in numbers]
+    return [_strings(part / numbers[-1][0]) for part in numbers]
 
 
 def _least_whole_factor(polynomial: fmpq_mpoly) -> int:

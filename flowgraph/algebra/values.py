@@ -11,7 +11,6 @@ from flint import arb, ctx, fmpq
 from flowgraph.algebra.valuation import Valuation
 from flowgraph.diagram.diagram import Coefficient
 from flowgraph.diagram.expression import Expression, Function
-from flowgraph.diagram.simulate import NoExactValueError, OpenCoefficientError
 
 FIRST_BITS = 128
 MOST_BITS = 8192
@@ -19,6 +18,18 @@ MOST_BITS = 8192
 LARGEST = arb(2) ** 1024
 SMALLEST = arb(2) ** -1076
 """Beyond the doubles, and what is rounded to zero."""
+
+
+class NoExactValueError(ValueError):
+    """An expression that has no rational value, and why."""
+
+
+class OpenCoefficientError(NoExactValueError):
+    """An expression that reads a coefficient without a value; `name` is that coefficient."""
+
+    def __init__(self, name: str) -> None:
+        super().__init__(f"the coefficient {name} is open: it has no value here")
+        self.name = name
 
 
 class DividesByZero(NoExactValueError):

@@ -23,9 +23,9 @@ from flowgraph.algebra.transfer import (
     number_transfers,
     roots_in_z,
 )
+from flowgraph.algebra.values import NoExactValueError
 from flowgraph.diagram.diagram import Coefficient, Diagram
 from flowgraph.diagram.expression import Function, Number
-from flowgraph.diagram.simulate import NoExactValueError
 
 ROOT_DEGREE = 400
 """Degree up to which poles and zeros are computed."""

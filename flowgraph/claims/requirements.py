@@ -11,6 +11,7 @@ from flowgraph.algebra.numbers import numbered
 from flowgraph.algebra.stability import stability_of_factors
 from flowgraph.algebra.stability_at_values import StabilityVerdict, stability_at_values
 from flowgraph.algebra.transfer import factors_in_z, number_transfers, roots_in_z
+from flowgraph.algebra.values import NoExactValueError, OpenCoefficientError
 from flowgraph.claims.intents import cone
 from flowgraph.claims.verdict import Outcome, Verdict
 from flowgraph.claims.wording import claim_text
@@ -22,7 +23,6 @@ from flowgraph.diagram.claim import (
     StableRequirement,
 )
 from flowgraph.diagram.diagram import Diagram, count
-from flowgraph.diagram.simulate import NoExactValueError, OpenCoefficientError
 from flowgraph.source.span import Span
 
 

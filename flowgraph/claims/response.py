@@ -14,11 +14,11 @@ from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour, RatioBehavi
 from flowgraph.algebra.residues import ResidueArithmetic, drawn_prime
 from flowgraph.algebra.solve import STARTS
 from flowgraph.algebra.valuation import Valuation
-from flowgraph.algebra.values import Values
+from flowgraph.algebra.values import NoExactValueError, Values
 from flowgraph.diagram.diagram import Coefficient, Diagram
 from flowgraph.diagram.elements import Delay
 from flowgraph.diagram.expression import Expression, Name, Power, children
-from flowgraph.diagram.simulate import NoExactValueError, simulate
+from flowgraph.diagram.simulate import simulate
 
 BITS = 512
 

@@ -9,12 +9,11 @@ from fractions import Fraction
 from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour, RatioBehaviour
 from flowgraph.algebra.residues import drawn
 from flowgraph.algebra.valuation import followed_expression, following_order
-from flowgraph.algebra.values import Values
+from flowgraph.algebra.values import NoExactValueError, Values
 from flowgraph.claims.response import balls_at, first_difference, fractions_at, powers_of_z
 from flowgraph.claims.verdict import Counterexample
 from flowgraph.diagram.diagram import Coefficient
 from flowgraph.diagram.expression import Expression, Number, names_in
-from flowgraph.diagram.simulate import NoExactValueError
 
 TRIES = 12
 """Choices of values for coefficients before the search for a witness ends."""

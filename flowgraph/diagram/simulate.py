@@ -7,25 +7,11 @@ rationals, residues modulo a prime, polynomials in the coefficient names.
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from fractions import Fraction
-from math import prod
 from typing import Protocol, Self, TypeVar
 
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Adder, Delay, Gain, Input, Signal
-from flowgraph.diagram.expression import (
-    Expression,
-    Function,
-    Name,
-    Negative,
-    Number,
-    Pi,
-    Power,
-    Product,
-    Quotient,
-    Sum,
-    names_in,
-)
+from flowgraph.diagram.expression import Expression
 from flowgraph.diagram.index import index, instant_order
 
 
@@ -112,89 +98,3 @@ def _total(terms: list[tuple[bool, T, T | None]], zero: T) -> T:
         else:
             total = total - product if negative else total + product
     return zero if total is None else total
-
-
-class NoExactValueError(ValueError):
-    """An expression that has no rational value, and why."""
-
-
-class OpenCoefficientError(NoExactValueError):
-    """An expression that reads a coefficient without a value; `name` is that coefficient."""
-
-    def __init__(self, name: str) -> None:
-        super().__init__(f"the coefficient {name} is open: it has no value here")
-        self.name = name
-
-
-def exact_values(diagram: Diagram) -> Callable[[Expression], Fraction]:
-    """A function that gives the rational value of a coefficient expression with the file's values.
-
-    That function raises OpenCoefficientError where a coefficient has no value, and NoExactValueError where
-    the value is no rational number (sqrt, sin, pi ..), divides by zero or follows itself.
-    """
-    known: dict[str, Fraction] = {}
-
-    def value(expression: Expression) -> Fraction:
-        """Values the coefficients that `expression` follows, the deepest first, without recursion."""
-        waiting = sorted(names_in(expression), reverse=True)
-        opened: set[str] = set()
-        while waiting:
-            name = waiting[-1]
-            if name in known:
-                waiting.pop()
-                continue
-            found = diagram.coefficients.get(name)
-            if found is None or found.value is None:
-                raise OpenCoefficientError(name)
-            missing = [other for other in sorted(names_in(found.value)) if other not in known]
-            if missing and name in opened:
-                raise NoExactValueError(f"the coefficient {name} follows itself")
-            opened.add(name)
-            if missing:
-                waiting.extend(reversed(missing))
-            else:
-                known[waiting.pop()] = rational(found.value, known)
-        return rational(expression, known)
-
-    return value
-
-
-def rational(expression: Expression, known: Mapping[str, Fraction]) -> Fraction:
-    """The rational value of an expression whose names are in `known`. Raises NoExactValueError if it has none."""
-    match expression:
-        case Number(value):
-            return value
-        case Name(name) if name in known:
-            return known[name]
-        case Sum(terms):
-            return sum((rational(term, known) for term in terms), Fraction(0))
-        case Product(factors):
-            return prod((rational(factor, known) for factor in factors), start=Fraction(1))
-        case Negative(inner):
-            return -rational(inner, known)
-        case Quotient(upper, lower):
-            return rational(upper, known) / _not_zero(rational(lower, known))
-        case Power(base, exponent) if exponent.denominator == 1:
-            inside = rational(base, known)
-            return Fraction((inside if exponent >= 0 else _not_zero(inside)) ** exponent.numerator)
-        case _:
-            raise NoExactValueError(f"{_said(expression)} has no exact value as a fraction")
-
-
-def _not_zero(value: Fraction) -> Fraction:
-    if value == 0:
-        raise NoExactValueError("a coefficient divides by zero")
-    return value
-
-
-def _said(expression: Expression) -> str:
-    """What stands in the way of a rational value, in a word."""
-    match expression:
-        case Power(_, exponent):
-            return f"the power {exponent}"
-        case Name(name) | Function(name, _):
-            return name
-        case Pi():
-            return "pi"
-        case _:
-            return "a sample"

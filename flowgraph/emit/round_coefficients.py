@@ -4,10 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from flowgraph.algebra.values import Values
+from flowgraph.algebra.values import NoExactValueError, OpenCoefficientError, Values
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.expression import Expression
-from flowgraph.diagram.simulate import NoExactValueError, OpenCoefficientError
 from flowgraph.source.diagnostic import Diagnostic, Refused
 from flowgraph.source.span import Span
 

@@ -84,7 +84,7 @@ def _response(section: Diagram) -> _Response | None:
     from flowgraph.algebra.exact_rings import TooLarge
     from flowgraph.algebra.numbers import numbered
     from flowgraph.algebra.transfer import number_transfers
-    from flowgraph.diagram.simulate import NoExactValueError
+    from flowgraph.algebra.values import NoExactValueError
 
     try:
         transfers = number_transfers(numbered(section).diagram).transfers

@@ -7,12 +7,13 @@ from random import Random
 
 import numpy
 import pytest
+from exact_values import exact_values
 from random_sections import Factor, Section, direct_one, direct_two, transposed
 from read_diagram import read_diagram
 
 from flowgraph.claims.analysis import Analysis, analyse
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.simulate import exact_values, simulate
+from flowgraph.diagram.simulate import simulate
 from flowgraph.text.load import load_text
 
 

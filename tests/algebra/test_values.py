@@ -4,15 +4,15 @@ from __future__ import annotations
 
 from decimal import Decimal, getcontext, localcontext
 from fractions import Fraction
+from itertools import pairwise
 from math import copysign
 from random import Random
 
 import pytest
 
-from flowgraph.algebra.values import Values
+from flowgraph.algebra.values import NoExactValueError, OpenCoefficientError, Values
 from flowgraph.diagram.diagram import Coefficient
 from flowgraph.diagram.expression import Expression, Function, Name, Negative, Number, Pi, Power, Product, Quotient, Sum
-from flowgraph.diagram.simulate import NoExactValueError, OpenCoefficientError
 
 PI = Decimal("3.14159265358979323846264338327950288419716939937510582097494459230781640628620899862803482534211706798")
 VALUES = Values({})
@@ -151,3 +151,35 @@ def test_an_open_coefficient_is_named() -> None:
     values = Values({"a": Coefficient("a"), "b": Coefficient("b", Function("exp", Name("a")))})
     with pytest.raises(OpenCoefficientError, match="the coefficient a is open"):
         values.double(Sum((number(1), Name("b"))))
+
+
+def test_values_are_exact_through_coefficients_that_follow_others() -> None:
+    """c = -r^2/(1 - r) with r = 1/3 is -1/6, whatever the order of definition."""
+    falling = Quotient(Negative(Power(Name("r"), Fraction(2))), Sum((number("1"), Negative(Name("r")))))
+    values = Values({"c": Coefficient("c", falling), "r": Coefficient("r", number("1/3"))})
+    assert values.fraction(Product((Name("c"), number("2")))) == Fraction(-1, 3)
+
+
+def test_a_hundred_thousand_coefficients_in_a_row_are_resolved() -> None:
+    """Following is resolved without recursion."""
+    names = [f"c{k}" for k in range(100_000)]
+    chain = {
+        name: Coefficient(name, Name(following)) for name, following in pairwise(names)
+    } | {names[-1]: Coefficient(names[-1], number("0.5"))}
+    assert Values(chain).fraction(Name("c0")) == Fraction(1, 2)
+
+
+@pytest.mark.parametrize(
+    ("expression", "said"),
+    [
+        (Function("sqrt", number("2")), "sqrt has no exact value as a fraction"),
+        (Pi(), "pi has no exact value as a fraction"),
+        (Power(number("10"), Fraction(-3, 10)), "the power -3/10 has no exact value as a fraction"),
+        (Quotient(number("1"), Sum((number("1"), number("-1")))), "a coefficient divides by zero"),
+        (Power(number("0"), Fraction(-1)), "a coefficient divides by zero"),
+    ],
+)
+def test_what_is_no_fraction_says_why(expression: Function, said: str) -> None:
+    """Irrational values and divisions by zero are refused by name."""
+    with pytest.raises(NoExactValueError, match=said):
+        Values({}).fraction(expression)

@@ -9,6 +9,7 @@ from random import Random
 
 import numpy
 import pytest
+from exact_values import exact_values
 from random_sections import Factor, Section, direct_one, direct_two, transposed
 from read_diagram import read_diagram
 from scipy import signal
@@ -19,7 +20,7 @@ from flowgraph.claims.analysis import Root, analyse, zeros
 from flowgraph.claims.verify import verify
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.expression import Expression
-from flowgraph.diagram.simulate import exact_values, simulate
+from flowgraph.diagram.simulate import simulate
 
 SEEDS = range(12)
 RATE = 48_000

@@ -5,6 +5,7 @@ from __future__ import annotations
 from fractions import Fraction
 
 import pytest
+from exact_values import exact_values
 from read_diagram import read_diagram, read_diagrams
 
 from flowgraph.algebra.numbers import numbered
@@ -13,7 +14,7 @@ from flowgraph.algebra.transfer import number_transfers
 from flowgraph.claims.verdict import Verdict
 from flowgraph.claims.verify import verify
 from flowgraph.diagram.diagram import Diagram, count
-from flowgraph.diagram.simulate import exact_values, simulate
+from flowgraph.diagram.simulate import simulate
 
 
 def impulse_response(diagram: Diagram, samples: int) -> list[Fraction]:

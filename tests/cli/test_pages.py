@@ -71,6 +71,26 @@ diagram d {
     assert "  rounded      1.23456789012\n" in told
 
 
+def test_analyse_says_where_numbers_without_a_name_are_shortened(capsys: pytest.CaptureFixture[str]) -> None:
+    """A product of three decimals has more digits than a page wants."""
+    told = page(
+        capsys,
+        "analyse",
+        """\
+diagram d {
+    input  x
+    output y
+    gain   a = 0.123456*x
+    gain   b = 0.654321*a
+    gain   y = 0.111111*b
+    intent y / x = 0.123456*0.654321*0.111111
+}
+""",
+    )
+    assert "  equation     y[n] = 0.00897554487974*x[n]\n" in told
+    assert "  note         numbers are shown to 12 digits here: --json gives all of them\n" in told
+
+
 def test_analyse_writes_sums_as_one_would(capsys: pytest.CaptureFixture[str]) -> None:
     """A sum begins with a term that it adds; where it adds none its sign is taken out."""
     told = page(

@@ -3,14 +3,14 @@
 from __future__ import annotations
 
 from fractions import Fraction
-from itertools import pairwise
 
 import pytest
+from exact_values import exact_values
 
 from flowgraph.diagram.diagram import Coefficient, Diagram
 from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Output, Signal, Term
-from flowgraph.diagram.expression import Function, Name, Negative, Number, Pi, Power, Product, Quotient, Sum
-from flowgraph.diagram.simulate import NoExactValueError, OpenCoefficientError, exact_values, simulate
+from flowgraph.diagram.expression import Name, Number
+from flowgraph.diagram.simulate import simulate
 
 ONE = Fraction(1)
 ZERO = Fraction(0)
@@ -107,51 +107,3 @@ def test_a_loop_without_a_delay_is_refused() -> None:
     )
     with pytest.raises(ValueError, match="a loop without a delay: y, u"):
         run(made, 1)
-
-
-def test_values_are_exact_through_coefficients_that_follow_others() -> None:
-    """c = -r^2/(1 - r) with r = 1/3 is -1/6, whatever the order of definition."""
-    made = diagram(
-        outputs=(),
-        c=Coefficient(
-            "c", Quotient(Negative(Power(Name("r"), Fraction(2))), Sum((number("1"), Negative(Name("r")))))
-        ),
-        r=Coefficient("r", number("1/3")),
-    )
-    assert exact_values(made)(Product((Name("c"), number("2")))) == Fraction(-1, 3)
-
-
-def test_a_hundred_thousand_coefficients_in_a_row_are_resolved() -> None:
-    """Following is resolved without recursion."""
-    names = [f"c{k}" for k in range(100_000)]
-    chain = {
-        name: Coefficient(name, Name(following)) for name, following in pairwise(names)
-    } | {names[-1]: Coefficient(names[-1], number("0.5"))}
-    made = diagram(outputs=(), **chain)
-    assert exact_values(made)(Name("c0")) == Fraction(1, 2)
-
-
-@pytest.mark.parametrize(
-    ("expression", "said"),
-    [
-        (Function("sqrt", number("2")), "sqrt has no exact value as a fraction"),
-        (Pi(), "pi has no exact value as a fraction"),
-        (Power(number("10"), Fraction(-3, 10)), "the power -3/10 has no exact value as a fraction"),
-        (Quotient(number("1"), Sum((number("1"), number("-1")))), "a coefficient divides by zero"),
-        (Power(number("0"), Fraction(-1)), "a coefficient divides by zero"),
-        (Name("loop"), "the coefficient loop follows itself"),
-    ],
-)
-def test_what_is_no_fraction_says_why(expression: Function, said: str) -> None:
-    """Irrational values, divisions by zero and coefficients that follow themselves are refused by name."""
-    made = diagram(outputs=(), loop=Coefficient("loop", Name("loop")))
-    with pytest.raises(NoExactValueError, match=said):
-        exact_values(made)(expression)
-
-
-def test_an_open_coefficient_is_named() -> None:
-    """A coefficient without a value is no zero."""
-    made = diagram(outputs=(), b0=Coefficient("b0"))
-    with pytest.raises(OpenCoefficientError) as caught:
-        exact_values(made)(Name("b0"))
-    assert caught.value.name == "b0"

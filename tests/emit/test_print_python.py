@@ -15,6 +15,7 @@ from typing import Protocol, cast
 import numpy as np
 import pytest
 import scipy.signal
+from exact_values import exact_values
 from hypothesis import given
 from hypothesis import strategies as st
 from random_diagrams import ANY_GAIN, SAMPLES, exact_outputs, small_samples, wired_diagrams
@@ -22,7 +23,7 @@ from random_diagrams import ANY_GAIN, SAMPLES, exact_outputs, small_samples, wir
 from flowgraph.diagram.diagram import Coefficient, Diagram
 from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Output, Signal, Term
 from flowgraph.diagram.expression import Expression, Name, Negative, Number
-from flowgraph.diagram.simulate import exact_values, simulate
+from flowgraph.diagram.simulate import simulate
 from flowgraph.emit.print_python import print_python, python_class_name
 from flowgraph.schedule.schedule import schedule
 from flowgraph.source.diagnostic import Refused

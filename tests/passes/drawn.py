@@ -5,12 +5,13 @@ from __future__ import annotations
 from dataclasses import replace
 from fractions import Fraction
 
+from exact_values import exact_values
 from hypothesis import strategies as st
 
 from flowgraph.diagram.diagram import Coefficient, Diagram
 from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Output, Signal, Term
 from flowgraph.diagram.expression import Expression, Name, Number
-from flowgraph.diagram.simulate import exact_values, simulate
+from flowgraph.diagram.simulate import simulate
 from flowgraph.passes.reduce import tidied
 from flowgraph.text.load import load_text
 

@@ -57,7 +57,9 @@ def moving_average(length: int) -> str:
 
 def impulse_response(diagram: Diagram, samples: int) -> list[Fraction]:
     """The exact response at port y to a one at sample 0."""
-    from flowgraph.diagram.simulate import exact_values, simulate
+    from exact_values import exact_values
+
+    from flowgraph.diagram.simulate import simulate
 
     one = [Fraction(1)]
     return simulate(diagram, exact_values(diagram), {"x": one}, samples, Fraction(0))["y"]

@@ -5,6 +5,7 @@ from __future__ import annotations
 from fractions import Fraction
 
 import pytest
+from exact_values import exact_values
 from hypothesis import given
 from hypothesis import strategies as st
 from random_diagrams import SAMPLES, small_samples, wired_diagrams
@@ -12,7 +13,7 @@ from random_diagrams import SAMPLES, small_samples, wired_diagrams
 from flowgraph.diagram.diagram import Counts, Diagram
 from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Output, Signal, Term
 from flowgraph.diagram.expression import Number
-from flowgraph.diagram.simulate import exact_values, simulate
+from flowgraph.diagram.simulate import simulate
 from flowgraph.schedule.schedule import DelayFreeLoopError, Operation, schedule
 
 
