@@ -99,13 +99,20 @@ def _in_lowest_terms(polynomials: list[Polynomial], ring: ExactRing[Polynomial])
         shared = reduce(fmpq_mpoly.gcd, parts)
         parts = [part // shared for part in parts]
         scale = _least_whole_factor(parts[-1])
-        if parts[-1].leading_coefficient() < 0:
+        if _first_part(parts[-1]).leading_coefficient() < 0:
             scale = -scale
         return [_by_power(part * scale, ring) for part in parts]
     numbers = [part for part in cleared if isinstance(part, fmpq_poly)]
     common = reduce(fmpq_poly.gcd, numbers)
     numbers = [part // common for part in numbers]
     return [_strings(part / numbers[-1][0]) for part in numbers]
+
+
+def _first_part(polynomial: fmpq_mpoly) -> fmpq_mpoly:
+    """What a polynomial is at w = 0, or at its lowest power of w."""
+    lowest = min(powers[-1] for powers in polynomial.to_dict())
+    terms = {powers: value for powers, value in polynomial.to_dict().items() if powers[-1] == lowest}
+    return polynomial.context().from_dict(terms)
 
 
 def _least_whole_factor(polynomial: fmpq_mpoly) -> int:

@@ -1,7 +1,7 @@
 """The page that `flowgraph analyse` prints: at most 80 columns, exact where that can be read.
 
 Numbers of at most TWELVE digits are shown exactly, longer ones to twelve digits on a line named
-`rounded`; --json always gives the exact ones.
+`rounded` or with a note; --json always gives the exact ones.
 """
 
 from __future__ import annotations
@@ -40,9 +40,15 @@ def analysis_page(diagram: Diagram, found: Analysis) -> str:
         lines += _hidden(diagram, mode, found)
     if not diagram.inputs():
         lines += _wrapped("note", "there is no input: all outputs come from the starting contents")
+    if found.named and not all(_shown(factor)[1] for ratio in found.named.values() for factor in _factors(ratio)):
+        lines += _wrapped("note", f"numbers are shown to {TWELVE} digits here: --json gives all of them")
     for remark in found.remarks:
         lines += _wrapped("note", remark)
     return "\n".join(lines) + "\n"
+
+
+def _factors(ratio: NamedTransfer) -> tuple[str, ...]:
+    return (*ratio.numerator, *ratio.denominator)
 
 
 def cell_name(diagram: Diagram, cell: tuple[str, int]) -> str:

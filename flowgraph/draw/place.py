@@ -2,28 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
-
-from flowgraph.draw.columns import Columns
-from flowgraph.draw.lanes import stack_bands
+from flowgraph.draw.grouping import Grouping
 from flowgraph.draw.model import Sketch
-from flowgraph.draw.plan import Plan, Spot, Wire, add_spots, columns_for
-from flowgraph.draw.rails import find_rails
-from flowgraph.draw.rows import Rows, assign_rows
+from flowgraph.draw.plan import Plan, Spot, Wire, columns_for
 
 CLASH_ROUNDS = 60
 MOST_MOVES = 4
-
-
-@dataclass(slots=True)
-class _Tap:
-    """A place on a net's row line where it is left: its group, and which links leave there."""
-
-    group: int
-    left: bool
-    rank: int
-    boxed: bool
-    links: list[int] = field(default_factory=list)
 
 
 def place(sketch: Sketch, crowded: frozenset[int] = frozenset()) -> Plan:
@@ -34,159 +18,16 @@ def place(sketch: Sketch, crowded: frozenset[int] = frozenset()) -> Plan:
     return _Placement(sketch, crowded).plan
 
 
-class _Placement:
+class _Placement(Grouping):
     def __init__(self, sketch: Sketch, crowded: frozenset[int]) -> None:
-        self.sketch = sketch
+        super().__init__(sketch)
         self.crowded = crowded
-        self.plan = Plan(sketch)
-        self.rows: Rows = assign_rows(sketch, find_rails(sketch))
-        stack_bands(self.rows)
-        self.leaves, self.enters = add_spots(self.plan, self.rows)
-        self.columns = Columns()
-        self.spot_group = [self.columns.new_group() for _ in self.plan.spots]
-        self.taps: dict[int, list[_Tap]] = {}
-        self.tap_of: dict[int, _Tap] = {}
         self.settled: set[int] = set()
         self.moved: list[tuple[int, int]] = []
-        self._join_circles()
-        self._join_delays()
-        self._make_taps()
-        self._hang_rungs()
         self._constrain()
         self._settle()
         self._margins()
         self._add_wires()
-
-    def _off_rail_delay(self, part: int) -> bool:
-        return self.sketch.is_delay(part) and not self.rows.on_rail(part)
-
-    def _vertical(self, part: int) -> bool:
-        return self._off_rail_delay(part) and self.rows.facing[part] in "NS"
-
-    def _flat(self, part: int) -> bool:
-        return self._off_rail_delay(part) and self.rows.facing[part] in "EW"
-
-    def _lines(self, group: int) -> set[int]:
-        """The half rows that the members of a group stand on."""
-        group = self.columns.group(group)
-        spots = zip(self.plan.spots, self.spot_group, strict=True)
-        return {spot.line for spot, own in spots if self.columns.group(own) == group}
-
-    def _join(self, one: int, other: int) -> None:
-        """Let two groups share a column, unless members of both would stand in one place."""
-        if self._lines(one).isdisjoint(self._lines(other)):
-            self.columns.join(one, other)
-
-    def _join_circles(self) -> None:
-        for wire in self.plan.wires:
-            self.columns.join(self.spot_group[wire.source], self.spot_group[wire.target])
-
-    def _join_delays(self) -> None:
-        """Delays that point down hang below one another; delays that point up stand under what reads them."""
-        continued: set[int] = set()
-        for number, link in enumerate(self.sketch.links):
-            source, target = link.source, link.target
-            own = self.spot_group[self.leaves[target]]
-            if self._vertical(target) and self.rows.facing[target] == "S":
-                if self._vertical(source) and self.rows.facing[source] == "S" and source not in continued:
-                    continued.add(source)
-                    self._join(self.spot_group[self.leaves[source]], own)
-            elif self._vertical(target) and not self.rows.on_rail(source) and source not in continued:
-                continued.add(source)
-                self._join(self.spot_group[self.leaves[source]], own)
-            if self._vertical(source) and self.rows.facing[source] == "N" and len(self.sketch.out[source]) == 1:
-                self._join(self.spot_group[self.leaves[source]], self.spot_group[self.enters[number]])
-
-    def _make_taps(self) -> None:
-        for part in range(len(self.sketch.parts)):
-            off = [link for link in self.sketch.out[part] if self.rows.off_rail_link(link)]
-            if self.rows.on_rail(part):
-                self._rail_taps(part, off)
-            elif self._flat(part) and (len(off) > 1 or any(self._leaves_row(link) for link in off)):
-                tap = _Tap(self.columns.new_group(), self.rows.facing[part] == "W", 0, False)
-                self._tap_links(part, tap, off)
-
-    def _leaves_row(self, link: int) -> bool:
-        ends = self.sketch.links[link]
-        return self.rows.line(ends.source) != self.plan.spots[self.enters[link]].line
-
-    def _rail_taps(self, part: int, off: list[int]) -> None:
-        place = self.rows.place[part]
-        ends_here = place is not None and place[1] == len(self.rows.rails[place[0]].parts) - 1
-        goes_straight_on = ends_here and len(off) == 1 and not self.rows.leftward[off[0]]
-        if goes_straight_on and not self._off_rail_delay(self.sketch.links[off[0]].target):
-            return
-        shared: dict[bool, _Tap] = {}
-        for link in off:
-            target = self.sketch.links[link].target
-            left = self.rows.leftward[link]
-            if self._vertical(target) and self.rows.facing[target] == "S":
-                left = self._line_runs_left(target)
-                tap = _Tap(self.spot_group[self.leaves[target]], left, 2 if left else 1, True)
-                self._tap_links(part, tap, [link])
-            elif self._flat(target):
-                self._tap_links(part, _Tap(self.columns.new_group(), left, 3 if left else 0, False), [link])
-            elif left in shared:
-                self._tap_links(part, shared[left], [link])
-            else:
-                shared[left] = _Tap(self.columns.new_group(), left, 1 if left else 2, False)
-                self._tap_links(part, shared[left], [link])
-
-    def _tap_links(self, part: int, tap: _Tap, links: list[int]) -> None:
-        if tap not in self.taps.setdefault(part, []):
-            self.taps[part].append(tap)
-        tap.links += links
-        for link in links:
-            self.tap_of[link] = tap
-
-    def _line_runs_left(self, delay: int) -> bool:
-        """Whether anything that reads a hanging line of delays lies to its left."""
-        seen: set[int] = set()
-        waiting = [delay]
-        while waiting:
-            part = waiting.pop()
-            for link in self.sketch.out[part]:
-                reader = self.sketch.links[link].target
-                if self._vertical(reader) and reader not in seen:
-                    seen.add(reader)
-                    waiting.append(reader)
-                elif self.rows.leftward[link] and not self._vertical(reader):
-                    return True
-        return False
-
-    def _hang_rungs(self) -> None:
-        """The tap of a lying delay stands exactly under the rail adder it feeds."""
-        used: set[int] = set()
-        for part in range(len(self.sketch.parts)):
-            if not self._flat(part) or part not in self.taps:
-                continue
-            for link in self.sketch.out[part]:
-                target = self.sketch.links[link].target
-                if (
-                    self.rows.on_rail(target)
-                    and self.rows.band[target] == self.rows.band[part]
-                    and target not in used
-                    and self.sketch.parts[target].kind == "adder"
-                    and self.enters[link] == self.leaves[target]
-                    and len(self.sketch.into[target]) < 4
-                ):
-                    used.add(target)
-                    self._join(self.taps[part][0].group, self.spot_group[self.leaves[target]])
-                    break
-
-    def _source_group(self, link: int) -> int:
-        if link in self.tap_of:
-            return self.tap_of[link].group
-        return self.spot_group[self.leaves[self.sketch.links[link].source]]
-
-    def _upright(self, link: int) -> bool:
-        """Whether a gain stands upright on a rung between the rail and the lying row below it."""
-        ends = self.sketch.links[link]
-        band = self.rows.band[ends.source]
-        if not self.rows.rung[band] or self.rows.band[ends.target] != band or link in self.rows.lanes:
-            return False
-        lines = {self.rows.row[ends.source], self.rows.row[ends.target]}
-        return lines == {0, 1} and self.rows.off_rail_link(link)
 
     def _constrain(self) -> None:
         for rail in self.rows.rails:
@@ -203,7 +44,7 @@ class _Placement:
                     direct = both and at == self.spot_group[self.leaves[part]]
                     self.columns.require(at, after, max(columns_for(self.sketch.links[link]), 2 if direct else 1))
         for part in range(len(self.sketch.parts)):
-            if self._flat(part) and part in self.taps:
+            if self.flat(part) and part in self.taps:
                 self._beside(
                     self.spot_group[self.leaves[part]], self.taps[part][0].group, self.rows.facing[part] == "W", 1
                 )
@@ -211,13 +52,13 @@ class _Placement:
         for link in ordered:
             if self.rows.off_rail_link(link):
                 ends = self.sketch.links[link]
-                wide = 1 if self._upright(link) else columns_for(ends)
+                wide = 1 if self.upright(link) else columns_for(ends)
                 kinds = {self.sketch.parts[ends.source].kind, self.sketch.parts[ends.target].kind}
-                boxes = self._flat(ends.source) and self._flat(ends.target) and link not in self.tap_of
+                boxes = self.flat(ends.source) and self.flat(ends.target) and link not in self.tap_of
                 if boxes or "gain" in kinds:
                     wide = max(wide, 2)
                 self._beside(
-                    self._source_group(link), self.spot_group[self.enters[link]], self.rows.leftward[link], wide
+                    self.source_group(link), self.spot_group[self.enters[link]], self.rows.leftward[link], wide
                 )
 
     def _urgency(self, link: int) -> tuple[bool, bool, int]:
@@ -255,13 +96,15 @@ class _Placement:
             if spot.kind not in ("input", "output"):
                 at[columns[self.spot_group[number]], spot.line] = number
         moved = False
-        for (column, line), left in at.items():
-            right = at.get((column + 1, line))
-            if right is None:
-                continue
-            joined = self._face_to_face(left, right, linked)
-            if not joined or left in self.crowded or right in self.crowded:
-                moved = self.columns.require(self.spot_group[left], self.spot_group[right], 2) or moved
+        for (column, line), here in at.items():
+            right, under = at.get((column + 1, line)), at.get((column, line + 1))
+            if right is not None:
+                crowded = here in self.crowded or right in self.crowded
+                if crowded or not self._face_to_face(here, right, linked):
+                    moved = self.columns.require(self.spot_group[here], self.spot_group[right], 2) or moved
+            if under is not None and (here, under) not in linked and (under, here) not in linked:
+                groups = self.spot_group[here], self.spot_group[under]
+                moved = self.columns.require(*groups, 1) or self.columns.require(*groups[::-1], 1) or moved
         return moved
 
     def _face_to_face(self, left: int, right: int, linked: set[tuple[int, int]]) -> bool:
@@ -282,7 +125,7 @@ class _Placement:
                 for link in tap.links:
                     if link in self.rows.lanes:
                         lines.append(self.rows.half_row(self.rows.band[part], self.rows.lanes[link]))
-                    elif self._upright(link):
+                    elif self.upright(link):
                         lines.append(self.rows.line(part) + 1)
                     elif self.sketch.parts[self.sketch.links[link].target].kind != "output":
                         lines.append(self.plan.spots[self.enters[link]].line)
@@ -344,7 +187,7 @@ class _Placement:
         link = self.sketch.into[part][0]
         source = self.plan.spots[self.leaves[self.sketch.links[link].source]]
         source_part = self.sketch.links[link].source
-        start = self.solved[self._source_group(link)]
+        start = self.solved[self.source_group(link)]
         flat = not self.rows.on_rail(source_part)
         if self.rows.leftward[link] and flat and self._clear(spot, source.line, left, start - 1):
             spot.column, spot.line, spot.facing = left, source.line, "E"
@@ -365,7 +208,7 @@ class _Placement:
                     return False
         for link, row in self.rows.lanes.items():
             ends = self.sketch.links[link]
-            columns = (self.solved[self._source_group(link)], self.plan.spots[self.enters[link]].column)
+            columns = (self.solved[self.source_group(link)], self.plan.spots[self.enters[link]].column)
             lane = self.rows.half_row(self.rows.band[ends.source], row)
             if abs(lane - line) < 1 and first <= max(columns) and min(columns) <= last:
                 return False
@@ -382,7 +225,7 @@ class _Placement:
                     self.enters[number],
                     link,
                     rail=number in on_rails,
-                    upright=self._upright(number),
+                    upright=self.upright(number),
                     lane=None if lane is None else self.rows.half_row(self.rows.band[link.source], lane),
                     tap=None if tap is None else self.solved[tap.group],
                 )
@@ -391,7 +234,7 @@ class _Placement:
             self.plan.taps[self.leaves[part]] = sorted({self.solved[tap.group] for tap in taps})
             self.plan.tap_line[self.leaves[part]] = self.rows.line(part)
         for part in range(len(self.sketch.parts)):
-            if self._vertical(part) and self.rows.facing[part] == "S" and self.sketch.out[part]:
+            if self.vertical(part) and self.rows.facing[part] == "S" and self.sketch.out[part]:
                 spot = self.plan.spots[self.leaves[part]]
                 self.plan.taps[self.leaves[part]] = [spot.column]
                 self.plan.tap_line[self.leaves[part]] = spot.line + 1

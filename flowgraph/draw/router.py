@@ -9,7 +9,7 @@ from __future__ import annotations
 from itertools import pairwise
 from math import ceil
 
-from flowgraph.draw.gains import Box, set_triangle
+from flowgraph.draw.gains import Box, set_triangle, standing_triangle
 from flowgraph.draw.grid import CELL, LABEL, NEAR_SYMBOL, OUTSIDE, Grid, Start
 from flowgraph.draw.labels import port_label, text_width
 from flowgraph.draw.plan import PORT_SIZE, Plan, Spot, Wire
@@ -44,7 +44,7 @@ class Router:
         ]
         self._place_symbols()
         for triangle in self.standing:
-            self.grid.make_costly(*triangle.label_cells(), LABEL)
+            self.grid.make_costly(*triangle.label_cells(), cost=LABEL)
         order = sorted(range(len(plan.wires)), key=self._urgency)
         rails = [wire for wire in order if plan.wires[wire].rail]
         early = [wire for wire in first if wire not in last]
@@ -249,7 +249,7 @@ class Router:
                     self.grid.blocked[cell] = 1
         for cell in path[triangle.run_start :]:
             self.grid.cost[cell] += ALONG_TRIANGLE
-        self.grid.make_costly(*triangle.label_cells(), LABEL)
+        self.grid.make_costly(*triangle.label_cells(), cost=LABEL)
 
     def _judge(self) -> None:
         """Which wires cross others or run through labels, and how many bends there are."""

@@ -87,7 +87,7 @@ diagram d {
 }
 """,
     )
-    assert "  equation     y[n] = 0.00897554487974*x[n]\n" in told
+    assert "  equation     y[n] = 0.00897553028846*x[n]\n" in told
     assert "  note         numbers are shown to 12 digits here: --json gives all of them\n" in told
 
 
