@@ -47,6 +47,9 @@ class NumberPolynomials:
         return fmpq_poly([fmpq(int(value.upper.leading_coefficient()), int(value.lower.leading_coefficient()))])
 
     def late(self, samples: int) -> fmpq_poly:
+        self._work += samples
+        if self._work > WORK_LIMIT:
+            raise TooLarge
         return self.one.left_shift(samples)
 
     def times(self, left: fmpq_poly, right: fmpq_poly) -> fmpq_poly:

@@ -20,6 +20,10 @@ BITS = (128, 256, 1024, 4096)
 """Precisions tried one after the other until a limit is separated from the gain."""
 
 
+MOST_DECIBELS = 100_000
+"""Limits beyond this are not looked at for being met exactly: 10^10000 is no gain."""
+
+
 class _PointOnCircle:
     """Certified balls at w = exp(-2 pi i turn): a field as long as no pivot encloses zero."""
 
@@ -113,7 +117,7 @@ class ResponseAt:
         With q the denominator of `turn`, w is a primitive q-th root of unity, whose minimal
         polynomial is cyclotomic: |H|^2 = limit is divisibility of N N* - limit D D* by it.
         """
-        if self.transfer is None or (decibels / 10).denominator != 1:
+        if self.transfer is None or (decibels / 10).denominator != 1 or abs(decibels) > MOST_DECIBELS:
             return False
         limit = Fraction(10) ** int(decibels / 10)
         upper, lower = self.transfer.numerator, self.transfer.denominator

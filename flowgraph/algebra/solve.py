@@ -15,6 +15,7 @@ from flowgraph.algebra.eliminate import solve_component
 from flowgraph.algebra.ring import Ring
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Adder, Delay, Gain, Input, Signal, Term
+from flowgraph.diagram.expression import ZERO
 from flowgraph.diagram.index import Index, index, strong_components
 
 R = TypeVar("R")
@@ -122,8 +123,9 @@ class _Solving(Generic[R]):
         total = ring.zero
         if isinstance(element, Delay) and element.starts:
             for n in range(signal.tap):
-                value = ring.coefficient(element.starts[signal.tap - n - 1])
-                total = ring.plus(total, ring.times(value, ring.late(n)))
+                content = element.starts[signal.tap - n - 1]
+                if content != ZERO:
+                    total = ring.plus(total, ring.times(ring.coefficient(content), ring.late(n)))
         return total
 
     def combined(self, terms: list[tuple[R, Signal]]) -> Response[R]:

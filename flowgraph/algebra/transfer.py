@@ -12,7 +12,7 @@ from flowgraph.algebra.behaviour import DiagramBehaviour
 from flowgraph.algebra.exact_rings import NumberPolynomials, SymbolPolynomials, exact_ring
 from flowgraph.algebra.rational_functions import symbolic_valuation
 from flowgraph.algebra.ring import ExactRing, Polynomial
-from flowgraph.algebra.solve import Solution, solve
+from flowgraph.algebra.solve import STARTS, Solution, solve
 from flowgraph.diagram.diagram import Diagram
 
 
@@ -56,23 +56,26 @@ def named_transfers(diagram: Diagram) -> dict[tuple[str, str], NamedTransfer]:
 
 
 def named_equations(diagram: Diagram) -> dict[str, NamedEquation]:
-    """One difference equation for every output that an input reaches, all responses over one denominator.
+    """One difference equation for every output that is not 0 for ever, all responses over one denominator.
 
     Raises TooLarge where the polynomials would not fit a page, and much more.
     """
     behaviour = DiagramBehaviour(diagram)
     ring = exact_ring(diagram.coefficients, behaviour.expressions())
     inputs = [port.name for port in diagram.inputs()]
-    responses = behaviour.responses(ring, [(output, source) for output in diagram.outputs for source in inputs])
+    pairs = [(output, source) for output in diagram.outputs for source in (*inputs, STARTS)]
+    responses = behaviour.responses(ring, pairs)
     equations: dict[str, NamedEquation] = {}
     for output in diagram.outputs:
-        # All responses of one output stand over the same determinants, those on the way to it.
+        # All responses of one output stand over the same determinants, those on the way to it. What
+        # no input reaches follows the equation of its starting contents, which has no inputs.
         uppers = {source: responses[(output, source)][0] for source in inputs}
         reached = {source: upper for source, upper in uppers.items() if upper != ring.zero}
-        if reached:
-            lower = _product(responses[(output, inputs[0])][1], ring)
-            *numerators, denominator = _in_lowest_terms([*reached.values(), lower], ring)
-            equations[output] = NamedEquation(denominator, dict(zip(reached, numerators, strict=True)))
+        start, lowers = responses[(output, STARTS)]
+        if reached or start != ring.zero:
+            over = list(reached.values()) or [start]
+            *numerators, denominator = _in_lowest_terms([*over, _product(lowers, ring)], ring)
+            equations[output] = NamedEquation(denominator, dict(zip(reached, numerators, strict=False)))
     return equations
 
 

@@ -16,9 +16,11 @@ from flowgraph.algebra.stability import Stability
 from flowgraph.algebra.stability_at_values import characteristic_factors, stability_at_values
 from flowgraph.algebra.states import cells_of
 from flowgraph.algebra.transfer import (
+    NamedEquation,
     NamedTransfer,
     NumberTransfer,
     factors_in_z,
+    named_equations,
     named_transfers,
     number_transfers,
     roots_in_z,
@@ -38,13 +40,14 @@ Root = tuple[float, float, int]
 class Analysis:
     """All that `analyse` tells of one diagram.
 
-    `named` is None where the polynomials with names grow beyond the work limit. What needs numbers
+    `named` and `equations` are None where the polynomials with names grow beyond the work limit. What needs numbers
     is None where a coefficient has no value; `exact` is False where one was rounded to a double.
     `order` is the least number of cells, None beyond CELL_LIMIT cells.
     """
 
     cells: int
     named: dict[tuple[str, str], NamedTransfer] | None
+    equations: dict[str, NamedEquation] | None
     numbers: dict[tuple[str, str], NumberTransfer] | None
     poles: list[Root] | None
     stability: Stability | None
@@ -58,8 +61,10 @@ def analyse(diagram: Diagram) -> Analysis:
     """Analyses one diagram; it must have no delay-free loop."""
     remarks: list[str] = []
     named: dict[tuple[str, str], NamedTransfer] | None = None
+    equations: dict[str, NamedEquation] | None = None
     try:
         named = named_transfers(_with_functions_named(diagram))
+        equations = named_equations(_with_functions_named(diagram))
     except TooLarge:
         remarks.append("with names, the polynomials grow beyond the work limit")
     except Undefined as error:
@@ -71,7 +76,8 @@ def analyse(diagram: Diagram) -> Analysis:
         remarks.append(f"{error}, so poles and stability have no answer here")
         found = _modes_at_trial_values(diagram, cells) if 0 < cells <= CELL_LIMIT else None
         order = found.order if found else 0 if not cells else None
-        return Analysis(cells, named, None, None, None, True, order, found.hidden if found else (), tuple(remarks))
+        hidden = found.hidden if found else ()
+        return Analysis(cells, named, equations, None, None, None, True, order, hidden, tuple(remarks))
     if not numbers.exact:
         remarks.append("sqrt, sin, cos, tan, exp and pi are taken as the nearest doubles for poles and hidden modes")
     transfers: dict[tuple[str, str], NumberTransfer] | None = None
@@ -81,7 +87,7 @@ def analyse(diagram: Diagram) -> Analysis:
         factors = _factors(numbers.diagram, cells)
     except TooLarge:
         remarks.append("the exact polynomials grow beyond the work limit")
-        return Analysis(cells, named, None, None, None, numbers.exact, None, (), tuple(remarks))
+        return Analysis(cells, named, equations, None, None, None, numbers.exact, None, (), tuple(remarks))
     poles = _roots(factors)
     if poles is None:
         remarks.append(f"poles are not listed beyond degree {ROOT_DEGREE}")
@@ -91,6 +97,7 @@ def analyse(diagram: Diagram) -> Analysis:
     return Analysis(
         cells,
         named,
+        equations,
         transfers,
         poles,
         stability,

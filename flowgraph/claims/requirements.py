@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
 from fractions import Fraction
 
 from flowgraph.algebra.exact_rings import TooLarge
@@ -23,37 +22,27 @@ from flowgraph.diagram.claim import (
     StableRequirement,
 )
 from flowgraph.diagram.diagram import Diagram, count
-from flowgraph.source.span import Span
 
 
-def needs_values(requirement: Requirement) -> bool:
-    """Whether the verdict depends on the numbers: then a used diagram is judged at each use."""
-    return not isinstance(requirement, CountRequirement)
-
-
-def verdict_on_requirement(requirement: Requirement, diagram: Diagram, use: Span | None = None) -> Verdict:
-    """The verdict with the coefficient values that the diagram has. `use` is where they came from."""
+def verdict_on_requirement(requirement: Requirement, diagram: Diagram) -> Verdict:
+    """The verdict with the coefficient values that the diagram has."""
     try:
         match requirement:
             case StableRequirement():
-                outcome = _stable(requirement, diagram)
+                return _stable(requirement, diagram)
             case BoundedRequirement():
-                outcome = _bounded(requirement, diagram)
+                return _bounded(requirement, diagram)
             case GainRequirement():
-                outcome = _gain(requirement, diagram)
+                return _gain(requirement, diagram)
             case CountRequirement():
-                outcome = _count(requirement, diagram)
+                return _count(requirement, diagram)
     except OpenCoefficientError as error:
         reason = f"the coefficient {error.name} is open: judged where {diagram.name} is used, or try --with"
-        outcome = _verdict(requirement, diagram, "undecided", "none", reason)
     except NoExactValueError as error:
-        outcome = _verdict(requirement, diagram, "undecided", "none", str(error))
+        reason = str(error)
     except TooLarge:
         reason = "the exact polynomials grow beyond the work limit"
-        outcome = _verdict(requirement, diagram, "undecided", "none", reason)
-    if use is None:
-        return outcome
-    return replace(outcome, use=use)
+    return _verdict(requirement, diagram, "undecided", "none", reason)
 
 
 def _verdict(
@@ -154,4 +143,5 @@ def _count(requirement: CountRequirement, diagram: Diagram) -> Verdict:
     counts = count(diagram)
     number = counts.cells if requirement.counted == "cells" else counts.multiplies
     outcome: Outcome = "proved" if number <= requirement.highest else "refuted"
-    return _verdict(requirement, diagram, outcome, "counted", f"{number} {requirement.counted}")
+    counted = requirement.counted.removesuffix("s") if number == 1 else requirement.counted
+    return _verdict(requirement, diagram, outcome, "counted", f"{number} {counted.replace('multiplie', 'multiply')}")

@@ -128,7 +128,9 @@ class _Polynomials(Generic[Q]):
         return (self.numbers.value(expression),)
 
     def late(self, samples: int) -> tuple[Q, ...]:
-        return (*[self.numbers.zero] * samples, self.numbers.one)[: self.length]
+        if samples >= self.length:
+            return (self.numbers.zero,)  # cut off, which is not the same as zero
+        return (*[self.numbers.zero] * samples, self.numbers.one)
 
     def plus(self, left: tuple[Q, ...], right: tuple[Q, ...]) -> tuple[Q, ...]:
         shorter, longer = sorted((left, right), key=len)
@@ -171,13 +173,16 @@ def _ratio_series(ratio: Expression, late: int, numbers: Numbers[Q], samples: in
     if any(numbers.differ(value, numbers.zero) for value in upper[:skipped]):
         raise ZeroDivisionError("the ratio is not causal")
     upper, lower = upper[skipped:], lower[skipped:]
+    feedback = [(k, value) for k, value in enumerate(lower) if k and value != numbers.zero]
     response: list[Q] = []
     for n in range(max(0, samples - late)):
         value = upper[n] if n < len(upper) else numbers.zero
-        for k in range(1, min(n, len(lower) - 1) + 1):
-            value = value - lower[k] * response[n - k]
+        for k, factor in feedback:
+            if k > n:
+                break
+            value = value - factor * response[n - k]
         response.append(value / lower[0])
-    return ([numbers.zero] * late + response)[:samples]
+    return [numbers.zero] * min(late, samples) + response
 
 
 def powers_of_z(ratio: Expression) -> int:

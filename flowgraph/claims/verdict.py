@@ -31,8 +31,9 @@ class Verdict:
     """The outcome for one claim.
 
     `method` is the road that decided: "exact", "identity test" (then error_below is k in 2^-k),
-    "certified" for enclosures, "counted". `conditions` are what a proof rests on. `use` is the place
-    of the use that gave the values, where the claim belongs to a used diagram.
+    "certified" for enclosures, "counted". `conditions` are what a proof rests on. `use` and
+    `used_as` are the place and the path of the use that gave the values, where the claim belongs to a
+    used diagram.
     """
 
     claim: str
@@ -45,3 +46,4 @@ class Verdict:
     reason: str = ""
     number: str = ""
     use: Span | None = None
+    used_as: str = ""

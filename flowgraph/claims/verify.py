@@ -5,10 +5,11 @@ from __future__ import annotations
 from dataclasses import replace
 
 from flowgraph.claims.intents import verdict_on_intent
-from flowgraph.claims.requirements import needs_values, verdict_on_requirement
+from flowgraph.claims.requirements import verdict_on_requirement
 from flowgraph.claims.verdict import Verdict
 from flowgraph.diagram.claim import (
     BoundedRequirement,
+    Claim,
     CountRequirement,
     DiagramIntent,
     EquationIntent,
@@ -20,6 +21,23 @@ from flowgraph.diagram.diagram import Diagram, Use
 from flowgraph.text.instantiate import with_renamed_coefficients
 
 
+def verify_all(diagrams: list[Diagram], included: set[str]) -> list[tuple[Diagram, list[Verdict]]]:
+    """The verdicts on each diagram, where what needs values is judged at the uses among them.
+
+    A requirement of a diagram with open coefficients is undecided only when none of the diagrams
+    gives it values; diagrams that merely came along in an include (`included`) need no values.
+    """
+    given_values = included | {
+        use.diagram.name for user in diagrams if not _is_open(user) for use in _open_uses(user)
+    }
+    judged: list[tuple[Diagram, list[Verdict]]] = []
+    for diagram in diagrams:
+        left_to_uses = _is_open(diagram) and diagram.name in given_values
+        kept = [claim for claim in diagram.claims if not (left_to_uses and _needs_values(claim))]
+        judged.append((diagram, verify(replace(diagram, claims=tuple(kept)))))
+    return judged
+
+
 def verify(diagram: Diagram) -> list[Verdict]:
     """The verdicts on the claims of one diagram in the order of the file, then those at its uses."""
     verdicts: list[Verdict] = []
@@ -28,10 +46,14 @@ def verify(diagram: Diagram) -> list[Verdict]:
             case EquationIntent() | RatioIntent() | DiagramIntent():
                 verdicts.append(verdict_on_intent(claim, diagram))
             case StableRequirement() | BoundedRequirement() | GainRequirement() | CountRequirement():
-                if not (needs_values(claim) and _is_open(diagram)):
-                    verdicts.append(verdict_on_requirement(claim, diagram))
+                verdicts.append(verdict_on_requirement(claim, diagram))
     verdicts.extend(_at_uses(diagram))
     return verdicts
+
+
+def _needs_values(claim: Claim) -> bool:
+    """Whether the verdict depends on the numbers: then a used diagram is judged at each use."""
+    return isinstance(claim, StableRequirement | BoundedRequirement | GainRequirement)
 
 
 def _is_open(diagram: Diagram) -> bool:
@@ -52,7 +74,7 @@ def _at_uses(diagram: Diagram) -> list[Verdict]:
         judged.add((use.diagram.name, values))
         there = at_use(use, diagram)
         verdicts.extend(
-            verdict_on_requirement(claim, there, use.span)
+            replace(verdict_on_requirement(claim, there), use=use.span, used_as=use.path)
             for claim in use.diagram.claims
             if isinstance(claim, StableRequirement | BoundedRequirement | GainRequirement)
         )

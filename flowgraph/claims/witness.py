@@ -18,7 +18,7 @@ from flowgraph.diagram.expression import Expression, Number, names_in
 TRIES = 12
 """Choices of values for coefficients before the search for a witness ends."""
 
-WORK_LIMIT = 20_000_000
+WORK_LIMIT = 2_000_000
 """Samples times elements of one search."""
 
 

@@ -12,7 +12,7 @@ from fractions import Fraction
 from textwrap import wrap
 
 from flowgraph.algebra.modes import HiddenMode
-from flowgraph.algebra.transfer import NamedTransfer, roots_in_z
+from flowgraph.algebra.transfer import NamedEquation, NamedTransfer, roots_in_z
 from flowgraph.claims.analysis import Analysis, Root, zeros
 from flowgraph.diagram.diagram import Diagram
 
@@ -27,9 +27,8 @@ NUMBER = re.compile(r"-?\d+(/\d+)?")
 def analysis_page(diagram: Diagram, found: Analysis) -> str:
     """All of the analysis for reading, with a line end after the last line."""
     lines = [diagram.name, *_cells(found)]
-    if found.named:
-        for output in diagram.outputs:
-            lines += _equation(diagram, output, found.named)
+    for output, equation in (found.equations or {}).items():
+        lines += _equation(output, equation)
     for output in diagram.outputs:
         for port in diagram.inputs():
             lines += _response(output, port.name, found)
@@ -101,18 +100,13 @@ def _stability(found: Analysis) -> list[str]:
     return ["  stability    undecided: too close to the limit to tell"] if found.poles is not None else []
 
 
-def _equation(diagram: Diagram, output: str, named: dict[tuple[str, str], NamedTransfer]) -> list[str]:
-    """y[n] in past inputs and outputs: direct where all responses of the output share a denominator."""
-    responses = [(port.name, named[(output, port.name)]) for port in diagram.inputs()]
-    responses = [(source, response) for source, response in responses if response.numerator != ("0",)]
-    lowers = {response.denominator for _, response in responses}
-    if len(lowers) != 1:
-        return []
-    lower = next(iter(lowers))
+def _equation(output: str, equation: NamedEquation) -> list[str]:
+    """y[n] in past inputs and outputs."""
+    lower = equation.denominator
     terms = [
         term
-        for source, response in responses
-        for late, factor in enumerate(response.numerator)
+        for source, numerator in equation.numerators.items()
+        for late, factor in enumerate(numerator)
         for term in _term(factor, source, late, "")
     ]
     terms += [term for late, factor in enumerate(lower) if late for term in _term(factor, output, late, "-")]

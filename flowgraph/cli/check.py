@@ -6,8 +6,9 @@ import argparse
 import json
 
 from flowgraph.cli.files import add_file_arguments, refuse, split_name
+from flowgraph.cli.findings import finding_told
 from flowgraph.diagram.diagram import Diagram, count
-from flowgraph.source.diagnostic import Diagnostic, Note
+from flowgraph.source.diagnostic import Diagnostic
 from flowgraph.source.render import render
 from flowgraph.text.load import load
 
@@ -32,7 +33,7 @@ def execute(options: argparse.Namespace) -> int:
             refuse(f"{path}: there is no diagram {missing[0]} here (there are: {', '.join(known) or 'none'})")
         diagrams.extend((path, diagram) for diagram in loaded.diagrams if not names or diagram.name in names)
     if options.json:
-        print(json.dumps({"findings": [_told(found) for found in findings]}, indent=2, ensure_ascii=False))
+        print(json.dumps({"findings": [finding_told(found) for found in findings]}, indent=2, ensure_ascii=False))
     else:
         _print(findings, diagrams)
     return 1 if any(found.severity == "error" for found in findings) else 0
@@ -47,25 +48,6 @@ def _by_file(arguments: list[str]) -> dict[str, list[str]]:
         if name is not None:
             names.append(name)
     return files
-
-
-def _told(found: Diagnostic) -> dict[str, object]:
-    return {
-        "code": found.code,
-        "severity": found.severity,
-        "message": found.message,
-        "file": found.span.file,
-        "line": found.span.line,
-        "column": found.span.column,
-        "mend": found.help,
-        "notes": [_note(note) for note in found.notes],
-    }
-
-
-def _note(note: Note) -> dict[str, object]:
-    if note.span is None:
-        return {"message": note.message}
-    return {"message": note.message, "file": note.span.file, "line": note.span.line, "column": note.span.column}
 
 
 def _print(findings: list[Diagnostic], diagrams: list[tuple[str, Diagram]]) -> None:

@@ -36,6 +36,9 @@ def execute(options: argparse.Namespace) -> int:
     if options.output is not None and len(diagrams) > 1:
         names = ", ".join(diagram.name for diagram in diagrams)
         refuse(f"-o takes one diagram and there are {len(diagrams)}: name one as FILE:NAME ({names}), or leave out -o")
+    twice = [diagram.name for at, diagram in enumerate(diagrams) if diagram.name in {d.name for d in diagrams[:at]}]
+    if twice:
+        refuse(f"several diagrams are called {twice[0]}, and each is drawn into a file of its name: use -o, one by one")
     drawn = [(diagram, _picture(diagram, options.reduced)) for diagram in diagrams]
     told = []
     for diagram, picture in drawn:
@@ -72,9 +75,13 @@ def _picture(diagram: Diagram, reduced: bool) -> Picture:
     try:
         if not reduced:
             return draw_page(diagram)
-        from flowgraph.passes.reduce import reduce_diagram
+        from flowgraph.algebra.rational_functions import Undefined
+        from flowgraph.passes.reduce import BrokenPassError, reduce_diagram
 
-        reduction = reduce_diagram(diagram)
+        try:
+            reduction = reduce_diagram(diagram)
+        except (BrokenPassError, Undefined) as error:
+            refuse(f"{diagram.name} cannot be reduced: {error}")
         merged = {(old.name, old.tap): (new.name, new.tap) for old, new in reduction.merged().items()}
         return draw_before_after(diagram, reduction.after, merged)
     except TooLarge as reason:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 import json
 
-from flowgraph.cli.files import add_file_argument, one_diagram, tell
+from flowgraph.cli.files import add_file_argument, one_diagram, refuse_overwriting, tell
 
 HELP = "the diagram as a program: a Python class with initialised cells"
 
@@ -31,6 +31,7 @@ def execute(options: argparse.Namespace) -> int:
         tell(refused.diagnostics)
         return 1
     if options.output is not None:
+        refuse_overwriting(options.files, options.output)
         with whole_file(options.output) as place:
             place.write_text(text, encoding="utf-8", newline="\n")
     if options.json:

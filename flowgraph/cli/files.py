@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 import argparse
+import json
+import os
 import sys
 from collections.abc import Iterable
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Literal, NoReturn
 
+from flowgraph.cli.findings import finding_told
 from flowgraph.cli.stop import Stop
 from flowgraph.diagram.claim import DiagramIntent
 from flowgraph.diagram.diagram import Diagram
@@ -44,21 +47,37 @@ def _add_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--json", action="store_true", help="one JSON object instead of text")
 
 
-def chosen_diagrams(
-    options: argparse.Namespace, tolerance: Tolerance = "nothing", *, every: bool = False
-) -> list[Diagram]:
+@dataclass(frozen=True, slots=True)
+class Chosen:
+    """The diagrams a command works on.
+
+    `included` names those that stand in an included file; `errors` says that an error was told which
+    the command tolerates.
+    """
+
+    diagrams: list[Diagram]
+    included: set[str]
+    errors: bool
+
+
+def choose(options: argparse.Namespace, tolerance: Tolerance = "nothing", *, every: bool = False) -> Chosen:
     """The diagrams named on the command line, at the values of --with.
 
     Of a FILE these are its diagrams that no other uses (with `every`, all of them and all those it
-    includes). Findings are printed to standard error; those not tolerated end the command with code
-    1, an unreadable file or an unknown name with code 2.
+    includes). Findings are told; those not tolerated end the command with code 1, an unreadable file
+    or an unknown name with code 2.
     """
     diagrams: list[Diagram] = []
+    errors = False
     for argument in options.files:
         path, name = split_name(argument)
         loaded = load(path, library=options.library)
         tell(loaded.findings)
+        errors = errors or any(found.severity == "error" for found in loaded.findings)
         if any(_stops(found, tolerance) for found in loaded.findings):
+            if options.json:
+                told = {"findings": [finding_told(found) for found in loaded.findings]}
+                print(json.dumps(told, indent=2, ensure_ascii=False))
             raise Stop(1)
         if name is not None:
             diagrams.append(_named(loaded, name, path))
@@ -66,7 +85,14 @@ def chosen_diagrams(
             diagrams.extend(loaded.diagrams if every else _used_by_none(loaded, path))
     if not diagrams:
         refuse(f"{', '.join(options.files)}: there is no diagram here")
-    return _with_values(diagrams, options.values)
+    paths = {split_name(argument)[0] for argument in options.files}
+    included = {diagram.name for diagram in diagrams if diagram.span.file not in paths}
+    return Chosen(_with_values(diagrams, options.values), included, errors)
+
+
+def chosen_diagrams(options: argparse.Namespace, tolerance: Tolerance = "nothing") -> list[Diagram]:
+    """The diagrams that choose() finds."""
+    return choose(options, tolerance).diagrams
 
 
 def one_diagram(options: argparse.Namespace, tolerance: Tolerance = "nothing") -> Diagram:
@@ -96,6 +122,14 @@ def refuse(message: str) -> NoReturn:
     """Says what cannot be used and ends the command with code 2."""
     print(f"error: {message}", file=sys.stderr)
     raise Stop(2)
+
+
+def refuse_overwriting(files: list[str], output: str) -> None:
+    """Ends the command with code 2 where an output would replace a file that is being read."""
+    for argument in files:
+        path, _ = split_name(argument)
+        if os.path.exists(path) and os.path.exists(output) and os.path.samefile(path, output):
+            refuse(f"{output}: this file is being read, name another output")
 
 
 def _stops(found: Diagnostic, tolerance: Tolerance) -> bool:

@@ -7,12 +7,11 @@ import json
 import sys
 from typing import TYPE_CHECKING
 
-from flowgraph.cli.files import add_file_argument, one_diagram
+from flowgraph.cli.files import add_file_argument, one_diagram, refuse_overwriting
 from flowgraph.cli.stop import Stop
 
 if TYPE_CHECKING:
     from flowgraph.diagram.diagram import Counts, Diagram
-    from flowgraph.diagram.elements import Signal
     from flowgraph.passes.reduce import BrokenPassError, Reduction, Step
 
 HELP = "rewrite passes, each step proved; the reduced diagram as text again"
@@ -33,6 +32,8 @@ def execute(options: argparse.Namespace) -> int:
     from flowgraph.text.printer import print_file
 
     diagram = one_diagram(options)
+    if options.output is not None:
+        refuse_overwriting(options.files, options.output)
     try:
         reduction = reduce_diagram(diagram)
     except Undefined as undefined:
@@ -44,7 +45,7 @@ def execute(options: argparse.Namespace) -> int:
     text = print_file(reduction.after)
     if options.output is not None:
         with whole_file(options.output) as place:
-            place.write_text(text, encoding="utf-8")
+            place.write_text(text, encoding="utf-8", newline="\n")
     if options.json:
         print(json.dumps(_as_json(reduction, text), indent=2, ensure_ascii=False))
         return 0
@@ -57,15 +58,20 @@ def execute(options: argparse.Namespace) -> int:
 
 def _told(reduction: Reduction, *, steps: bool) -> list[str]:
     """Counts, steps and merged cells, a line each."""
-    before, after = reduction.counts()
-    lines = [f"{reduction.before.name:<16}{'before':>8}{'after':>8}"]
-    for what in ("cells", "multiplies", "adds"):
-        lines.append(f"  {what:<14}{getattr(before, what):>8}{getattr(after, what):>8}")
+    before, after = (_counts(counts) for counts in reduction.counts())
+    name = reduction.before.name
+    width = max(len(name), 16)  # names have at most 64 letters, so that this stays within 80 columns
+    lines = [f"{name:<{width}}{'before':>8}{'after':>8}"]
+    lines += [f"{f'  {what}':<{width}}{before[what]:>8}{after[what]:>8}" for what in before]
     if not reduction.steps:
         return [*lines, "", "nothing to save"]
     for number, step in enumerate(reduction.steps, start=1):
         lines += ["", *_step_lines(number, step, with_diagram=steps)]
-    merged = [f"  {', '.join(cells)} -> {into}" for into, cells in _merged_cells(reduction).items()]
+    merged = [
+        line
+        for into, cells in _merged_cells(reduction).items()
+        for line in _wrapped(f"  {', '.join(cells)} -> {into}", "      ")
+    ]
     return [*lines, "", "cells that became one", *merged] if merged else lines
 
 
@@ -75,7 +81,7 @@ def _step_lines(number: int, step: Step, *, with_diagram: bool) -> list[str]:
     from flowgraph.passes.reduce import tidied
     from flowgraph.text.printer import print_diagram
 
-    lines = wrap(f"{number}. {step.name}: {step.message}", 80, subsequent_indent="   ")
+    lines = _wrapped(f"{number}. {step.name}: {step.message}", "   ")
     lines += wrap(step.law, 77, initial_indent="   law    ", subsequent_indent="          ")
     lines.append(f"   proof  {step.proof}")
     if with_diagram:
@@ -83,18 +89,26 @@ def _step_lines(number: int, step: Step, *, with_diagram: bool) -> list[str]:
     return lines
 
 
+def _wrapped(text: str, indent: str) -> list[str]:
+    """The text in lines of at most 80 letters; `line[1 .. 8]` is never torn apart."""
+    from textwrap import wrap
+
+    whole = text.replace(" .. ", "\0..\0")
+    lines = wrap(whole, 80, subsequent_indent=indent, break_long_words=False, break_on_hyphens=False)
+    return [line.replace("\0..\0", " .. ") for line in lines]
+
+
 def _merged_cells(reduction: Reduction) -> dict[str, list[str]]:
-    """For each cell that two or more cells became: those cells, in the order of the file."""
-    into: dict[Signal, list[str]] = {}
-    for cell, kept in reduction.merged().items():
-        into.setdefault(kept, []).append(_written(cell, reduction.before))
-    return {_written(kept, reduction.after): cells for kept, cells in into.items() if len(cells) > 1}
-
-
-def _written(cell: Signal, diagram: Diagram) -> str:
+    """For each cell, or run of neighbouring cells, that two or more became: those, in the order of the file."""
+    from flowgraph.passes.carried import shared
     from flowgraph.passes.wording import signal_text
 
-    return signal_text(cell, diagram)
+    return {
+        signal_text(found.image, reduction.after, found.cells): [
+            signal_text(source, reduction.before, found.cells) for source in found.sources
+        ]
+        for found in shared(reduction.carried())
+    }
 
 
 def _as_json(reduction: Reduction, text: str) -> dict[str, object]:

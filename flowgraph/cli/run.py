@@ -9,7 +9,7 @@ from collections.abc import Callable
 from time import monotonic
 from typing import TYPE_CHECKING
 
-from flowgraph.cli.files import add_file_argument, one_diagram, refuse, tell
+from flowgraph.cli.files import add_file_argument, one_diagram, refuse, refuse_overwriting, tell
 
 if TYPE_CHECKING:
     from flowgraph.run.run_recording import Ran
@@ -31,6 +31,7 @@ def execute(options: argparse.Namespace) -> int:
     from flowgraph.source.diagnostic import Refused
 
     diagram = one_diagram(options, "claims")
+    refuse_overwriting([*options.files, options.source], options.target)
     try:
         ran = run_recording(diagram, options.source, options.target, progress_bar(options.source))
     except Refused as refused:

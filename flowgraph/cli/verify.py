@@ -8,9 +8,9 @@ import sys
 from textwrap import wrap
 
 from flowgraph.claims.verdict import Counterexample, Verdict
-from flowgraph.claims.verify import verify
+from flowgraph.claims.verify import verify_all
 from flowgraph.claims.wording import claim_text
-from flowgraph.cli.files import add_file_arguments, chosen_diagrams
+from flowgraph.cli.files import add_file_arguments, choose
 from flowgraph.diagram.diagram import Diagram
 
 HELP = "each claim proved, refuted or undecided"
@@ -23,7 +23,8 @@ def configure(parser: argparse.ArgumentParser) -> None:
 
 def execute(options: argparse.Namespace) -> int:
     """Prints the verdicts: 0 when all are proved, 1 with a refutation, 3 with something undecided."""
-    judged = [(diagram, verify(diagram)) for diagram in chosen_diagrams(options, every=True)]
+    chosen = choose(options, "claims", every=True)
+    judged = verify_all(chosen.diagrams, chosen.included)
     if options.json:
         told = {"diagrams": [_told(diagram, verdicts) for diagram, verdicts in judged]}
         print(json.dumps(told, indent=2, ensure_ascii=False))
@@ -31,7 +32,7 @@ def execute(options: argparse.Namespace) -> int:
         for at, (diagram, verdicts) in enumerate(judged):
             print(("\n" if at else "") + _page(diagram, verdicts))
     outcomes = {verdict.outcome for _, verdicts in judged for verdict in verdicts}
-    return 1 if "refuted" in outcomes else 3 if "undecided" in outcomes else 0
+    return 1 if "refuted" in outcomes or chosen.errors else 3 if "undecided" in outcomes else 0
 
 
 def _told(diagram: Diagram, verdicts: list[Verdict]) -> dict[str, object]:
@@ -52,7 +53,7 @@ def _verdict_told(verdict: Verdict) -> dict[str, object]:
         "conditions": list(verdict.conditions),
         "reason": verdict.reason,
         "set": "base",
-        "use": None if verdict.use is None else str(verdict.use),
+        "use": None if verdict.use is None else {"name": verdict.used_as, "place": str(verdict.use)},
         "counterexample": None if shown is None else _counterexample_told(shown),
         "explained_by": None,
     }
@@ -113,7 +114,7 @@ def _remarks(verdict: Verdict) -> list[str]:
         road = f"{verdict.method}, error below 2^-{verdict.error_below}"
     remarks = [f"{road} ({verdict.span})" if road != "none" else str(verdict.span)]
     if verdict.use is not None:
-        remarks.append(f"with the values given at {verdict.use}")
+        remarks.append(f"with the values given to {verdict.used_as} ({verdict.use})")
     if verdict.reason:
         remarks.append(verdict.reason)
     if verdict.conditions:

@@ -12,7 +12,7 @@ from flowgraph.draw.picture import Label, Picture
 
 HEADING_SIZE, NOTE_SIZE = 13.0, 11.0
 HEADING_SPACE, BETWEEN = 34.0, 44.0
-LEGEND = ("Same letter and fill = same samples.", "Double frame = the one cell kept, ×2 = it stands for two.")
+LEGEND = ("Same letter and fill = cells that become one.", "Double frame = the one cell kept, ×2 = it stands for two.")
 
 
 def draw_page(diagram: Diagram) -> Picture:

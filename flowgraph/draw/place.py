@@ -95,17 +95,32 @@ class _Placement(Grouping):
         for number, spot in enumerate(self.plan.spots):
             if spot.kind not in ("input", "output"):
                 at[columns[self.spot_group[number]], spot.line] = number
+        leftmost, rightmost = self._partners(columns)
         moved = False
         for (column, line), here in at.items():
             right, under = at.get((column + 1, line)), at.get((column, line + 1))
             if right is not None:
                 crowded = here in self.crowded or right in self.crowded
-                if crowded or not self._face_to_face(here, right, linked):
+                wanted = rightmost[here] > column or leftmost[right] < column + 1
+                if crowded or (wanted and not self._face_to_face(here, right, linked)):
                     moved = self.columns.require(self.spot_group[here], self.spot_group[right], 2) or moved
             if under is not None and (here, under) not in linked and (under, here) not in linked:
                 groups = self.spot_group[here], self.spot_group[under]
                 moved = self.columns.require(*groups, 1) or self.columns.require(*groups[::-1], 1) or moved
         return moved
+
+    def _partners(self, columns: list[int]) -> tuple[list[int], list[int]]:
+        """For each spot the leftmost and the rightmost column that its wires come from or go to."""
+        leftmost = [columns[group] for group in self.spot_group]
+        rightmost = list(leftmost)
+        for number, link in enumerate(self.sketch.links):
+            source, target = self.leaves[link.source], self.enters[number]
+            left_at = columns[self.source_group(number)]
+            goes_to = left_at if number in self.tap_of else columns[self.spot_group[target]]
+            for spot, column in ((target, left_at), (source, goes_to)):
+                leftmost[spot] = min(leftmost[spot], column)
+                rightmost[spot] = max(rightmost[spot], column)
+        return leftmost, rightmost
 
     def _face_to_face(self, left: int, right: int, linked: set[tuple[int, int]]) -> bool:
         """Whether a wire goes straight from one neighbour into the other."""

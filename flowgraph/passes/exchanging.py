@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from functools import partial
 
 from flowgraph.diagram.diagram import Diagram, count
 from flowgraph.diagram.elements import Delay, Element, Signal, signals_read
@@ -11,7 +12,7 @@ from flowgraph.passes.linear import collected, element_of
 from flowgraph.passes.naming import Names
 from flowgraph.passes.network import Network
 from flowgraph.passes.rearrangement import Behind, Moved, Rearrangement
-from flowgraph.passes.settling import SettledLine
+from flowgraph.passes.settling import FreshNames, SettledLine
 from flowgraph.passes.wording import counted, listed
 from flowgraph.passes.worthwhile import Exchange, cells_needed
 
@@ -39,28 +40,30 @@ class _Exchanging:
 
     def _settle_lines(self) -> dict[str, SettledLine]:
         """The lines behind every node whose readers changed."""
-        latest: dict[str, int] = {}
+        read_late: dict[str, set[int]] = {}
         still_read: dict[str, list[Signal]] = {}
         for moved in self._arranged.moved:
-            latest.update((self._name(node), 0) for node in (*moved.exchange.signals, moved.between))
-        latest.update((name, 0) for name in self._arranged.name_of.values())
+            read_late.update((self._name(node), set()) for node in (*moved.exchange.signals, moved.between))
+        read_late.update((name, set()) for name in self._arranged.name_of.values())
         for terms in self._arranged.terms.values():
             for read, _ in terms:
                 if isinstance(read, Behind):
-                    latest[read.node] = max(read.late, latest[read.node])
+                    read_late[read.node].add(read.late)
                 else:
                     still_read.setdefault(self._network.place(read)[0], []).append(read)
-        for node in latest:
+        for node in read_late:
             for reader, wire in self._network.readers.get(node, ()):
                 if reader not in self._arranged.taken_up:
                     still_read.setdefault(node, []).append(wire.signal)
-        cells = {moved.between: iter(moved.cells) for moved in self._arranged.moved}
         return {
-            node: SettledLine(
-                self._network, node, still_read.get(node, []), late, cells.get(node, self._names.cells_behind(node))
-            )
-            for node, late in latest.items()
+            node: SettledLine(self._network, node, still_read.get(node, []), late, self._fresh_names(node))
+            for node, late in read_late.items()
         }
+
+    def _fresh_names(self, node: str) -> FreshNames:
+        """The names the exchange gave the cells of a signal between, else such as stand behind the node."""
+        cells = next((moved.cells for moved in self._arranged.moved if moved.between == node), None)
+        return partial(self._names.cells_behind, node) if cells is None else lambda number, each: cells
 
     def _name(self, node: str) -> str:
         return self._arranged.name_of.get(node, node)
@@ -105,17 +108,21 @@ class _Exchanging:
         moved_cells: dict[Signal, Signal] = {}
         for moved in self._arranged.moved:
             before, middle, behind = moved.exchange.signals
-            members = moved.exchange.members()
-            for node, heads in ((before, [moved.between]), (behind, [moved.between]), (middle, [behind, before])):
-                read = [wire.signal for reader, wire in self._network.readers[node] if reader in members]
+            run_a, run_b = moved.exchange.members_of_runs()
+            for node, readers, head in (
+                (before, run_a, moved.between),
+                (behind, run_b, moved.between),
+                (middle, run_a, behind),
+                (middle, run_b, before),
+            ):
+                read = [wire.signal for reader, wire in self._network.readers[node] if reader in readers]
+                settled = self._settled[self._name(node)].lines
                 for name, needed in cells_needed(self._network, node, read).items():
-                    rest = self._settled[self._name(node)].lines.get(name)
+                    rest = settled.get(name)
                     for tap in range(1 + (rest.length if rest is not None else 0), needed + 1):
-                        late = self._network.offset[name] + tap
-                        found = [self._settled[self._name(head)].cell.get(late) for head in heads]
-                        image = next((cell for cell in found if cell is not None), None)
+                        image = self._settled[self._name(head)].cell.get(self._network.offset[name] + tap)
                         if image is not None:
-                            moved_cells[Signal(name, tap)] = image
+                            moved_cells.setdefault(Signal(name, tap), image)
         return moved_cells
 
     def _regions(self, after: Diagram) -> tuple[frozenset[str], ...]:

@@ -2,20 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Hashable
+from collections.abc import Hashable, Mapping
 from dataclasses import replace
 
 from flowgraph.algebra.residues import ResidueArithmetic, drawn
 from flowgraph.algebra.valuation import Valuation
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Delay, Element, Input, Signal, redirected
-from flowgraph.diagram.expression import ZERO, Number
+from flowgraph.diagram.expression import Number
 from flowgraph.passes.change import Change
 from flowgraph.passes.cost import cost
 from flowgraph.passes.linear import Weight, collected, element_of, multiplies_in, terms_of
 from flowgraph.passes.naming import Names
 from flowgraph.passes.partition import MODULUS, coarsest_partition
 from flowgraph.passes.proof import Keys
+from flowgraph.passes.stretches import Numbering, Stretch
 from flowgraph.passes.wording import counted, listed, moves_text
 
 
@@ -39,34 +40,26 @@ _SEED = "equal signals"
 
 
 class _Merging:
-    """The classes of equal signals of a diagram, and for each the one signal that stays."""
+    """The classes of equal signals of a diagram, and for each the one stretch of cells or the one sum that stays."""
 
     def __init__(self, diagram: Diagram, apart: frozenset[str]) -> None:
         self._diagram = diagram
-        self._first_node: dict[str, int] = {}
-        self._class_of: list[int] = []
-        self._stays: dict[int, Signal] = {}
+        self._stays: dict[int, Stretch] = {}
         self.doubled: dict[str, None] = {}
-        signals = self._number_signals()
-        groups = coarsest_partition(self._labels(apart), self._readers(len(signals)))
-        self._class_of = [0] * len(signals)
-        for at, group in enumerate(groups):
+        self._number = Numbering(diagram, Keys(diagram))
+        self._groups = coarsest_partition(self._labels(apart), self._readers())
+        self._class_of = [0] * len(self._number.stretches)
+        for at, group in enumerate(self._groups):
             for node in group:
                 self._class_of[node] = at
-        self._signals = signals
-        self._groups = groups
 
     def change(self) -> Change | None:
         """The merged diagram; None where every signal is the only one of its class."""
-        if len(self._groups) == len(self._signals):
+        if len(self._groups) == len(self._number.stretches):
             return None
         self._choose_sums()
         pieces = self._choose_cells()
-        moved = {
-            signal: self._stays[at]
-            for signal, at in zip(self._signals, self._class_of, strict=True)
-            if self._stays[at] != signal
-        }
+        moved = self._moved()
         kept: dict[str, Element] = {}
         for name, element in self._diagram.elements.items():
             if isinstance(element, Delay):
@@ -81,62 +74,57 @@ class _Merging:
         after = replace(self._diagram, elements=kept, outputs=outputs)
         return Change(after, self._message(after, moved), moved)
 
-    def _number_signals(self) -> list[Signal]:
-        """Every signal once: a node for each element that is no delay, one for each cell of a delay."""
-        signals: list[Signal] = []
-        for name, element in self._diagram.elements.items():
-            self._first_node[name] = len(signals)
-            if isinstance(element, Delay):
-                signals.extend(Signal(name, tap) for tap in range(1, element.length + 1))
-            else:
-                signals.append(Signal(name))
-        return signals
-
-    def _node(self, signal: Signal) -> int:
-        return self._first_node[signal.name] + max(signal.tap - 1, 0)
-
     def _labels(self, apart: frozenset[str]) -> list[Hashable]:
         """What tells signals apart at once: inputs by name, cells by content, sums not at all."""
-        keys = Keys(self._diagram)
-        rest = keys.of_expression(ZERO)
         labels: list[Hashable] = []
-        for name, element in self._diagram.elements.items():
-            if isinstance(element, Delay):
-                starts = [keys.of_expression(start) for start in element.starts] or [rest] * element.length
-                labels.extend(("cell", start) for start in starts)
-            elif isinstance(element, Input) or name in apart:
-                labels.append(("alone", name))
+        for node, stretch in enumerate(self._number.stretches):
+            if stretch.last:
+                labels.append(("cell", self._number.labels[node]))
+            elif stretch.name in apart or isinstance(self._diagram.elements[stretch.name], Input):
+                labels.append(("alone", stretch.name))
             else:
                 labels.append(("sum", None))
         return labels
 
-    def _readers(self, nodes: int) -> list[list[tuple[int, int]]]:
+    def _readers(self) -> list[list[tuple[int, int]]]:
         """Who reads each node, and with which weight as a residue."""
         value = Valuation(ResidueArithmetic(MODULUS, _SEED), self._diagram.coefficients, at_values=False)
-        readers: list[list[tuple[int, int]]] = [[] for _ in range(nodes)]
-        for name, element in self._diagram.elements.items():
-            node = self._first_node[name]
+        readers: list[list[tuple[int, int]]] = [[] for _ in self._number.stretches]
+        for element in self._diagram.elements.values():
             if isinstance(element, Delay):
-                readers[self._node(element.signal)].append((node, 1))
-                for tap in range(1, element.length):
-                    readers[node + tap - 1].append((node + tap, 1))
+                source = self._number.of(element.signal)
+                for node in self._number.along(element):
+                    readers[source].append((node, 1))
+                    source = node
             else:
+                node = self._number.first[element.name]
                 for signal, weight in terms_of(element) or ():
-                    readers[self._node(signal)].append((node, _residue(weight, value)))
+                    readers[self._number.of(signal)].append((node, _residue(weight, value)))
         return readers
+
+    def _moved(self) -> dict[Signal, Signal]:
+        """For each signal that does not stay the one that does its work."""
+        moved: dict[Signal, Signal] = {}
+        for stretch, at in zip(self._number.stretches, self._class_of, strict=True):
+            stays = self._stays[at]
+            if stays != stretch:
+                for cell in range(stretch.cells or 1):
+                    moved[Signal(stretch.name, stretch.first + cell)] = Signal(stays.name, stays.first + cell)
+        return moved
 
     def _choose_sums(self) -> None:
         """Of equal sums the one that needs the fewest multiplies and adds stays, the first in the file among those."""
+        stretches = self._number.stretches
         for at, group in enumerate(self._groups):
-            if self._signals[group[0]].tap == 0:
-                self._stays[at] = self._signals[group[0] if len(group) == 1 else self._cheapest(group)]
+            if not stretches[group[0]].last:
+                self._stays[at] = stretches[group[0] if len(group) == 1 else self._cheapest(group)]
 
     def _cheapest(self, group: list[int]) -> int:
         """Equal sums cost the same where each reads every class at most once, and as many classes."""
         terms_in = {
             node: [
-                (self._class_of[self._node(signal)], weight)
-                for signal, weight in terms_of(self._diagram.elements[self._signals[node].name]) or ()
+                (self._class_of[self._number.of(signal)], weight)
+                for signal, weight in terms_of(self._diagram.elements[self._number.stretches[node].name]) or ()
             ]
             for node in group
         }
@@ -153,35 +141,31 @@ class _Merging:
         longest_first = sorted(self._diagram.delays(), key=lambda line: -line.length)
         cut: list[Delay] = []
         for line in longest_first:
-            classes = self._classes_of(line)
-            if self._stays.keys().isdisjoint(classes) and len(set(classes)) == line.length:
-                self._stays.update((at, Signal(line.name, tap)) for tap, at in enumerate(classes, start=1))
+            nodes = self._number.along(line)
+            classes = [self._class_of[node] for node in nodes]
+            if self._stays.keys().isdisjoint(classes) and len(set(classes)) == len(classes):
+                self._stays.update((at, self._number.stretches[node]) for at, node in zip(classes, nodes, strict=True))
                 pieces[line.name] = [line]
             else:
                 cut.append(line)
         for line in cut:
-            taken: dict[int, int] = {}
-            for tap, at in enumerate(self._classes_of(line), start=1):
-                if at not in self._stays:
-                    taken.setdefault(at, tap)
-            pieces[line.name] = self._pieces(line, list(taken.values()), names)
+            taken: dict[int, Stretch] = {}
+            for node in self._number.along(line):
+                if self._class_of[node] not in self._stays:
+                    taken.setdefault(self._class_of[node], self._number.stretches[node])
+            pieces[line.name] = self._pieces(line, taken, names)
         return pieces
 
-    def _classes_of(self, line: Delay) -> list[int]:
-        first = self._first_node[line.name]
-        return self._class_of[first : first + line.length]
-
-    def _pieces(self, line: Delay, taps: list[int], names: Names) -> list[Delay]:
+    def _pieces(self, line: Delay, taken: dict[int, Stretch], names: Names) -> list[Delay]:
         """One line for each unbroken run of the cells that stay."""
         made: list[Delay] = []
-        for run in _runs(taps):
+        for run in _runs(taken):
             name = line.name if not made else names.fresh(line.name)
-            source = line.signal if run[0] == 1 else Signal(line.name, run[0] - 1)
-            starts = line.starts[run[0] - 1 : run[-1]]
-            made.append(Delay(name, source, len(run), starts, line.span))
-            for tap in run:
-                at = self._class_of[self._first_node[line.name] + tap - 1]
-                self._stays[at] = Signal(name, tap - run[0] + 1)
+            first, last = taken[run[0]].first, taken[run[-1]].last
+            source = line.signal if first == 1 else Signal(line.name, first - 1)
+            made.append(Delay(name, source, last - first + 1, line.starts[first - 1 : last], line.span))
+            for at in run:
+                self._stays[at] = Stretch(name, taken[at].first - first + 1, taken[at].last - first + 1)
         return made
 
     def _reading_merged(self, element: Element, moved: dict[Signal, Signal]) -> Element:
@@ -200,8 +184,9 @@ class _Merging:
         return element_of(element.name, collected(merged_terms), element.span)
 
     def _message(self, after: Diagram, moved: dict[Signal, Signal]) -> str:
-        cells = sum(len(group) - 1 for group in self._groups if self._signals[group[0]].tap)
-        sums = sum(len(group) - 1 for group in self._groups if not self._signals[group[0]].tap)
+        merged = [(len(group) - 1, self._number.stretches[group[0]]) for group in self._groups]
+        cells = sum(saved * stretch.cells for saved, stretch in merged)
+        sums = sum(saved for saved, stretch in merged if not stretch.last)
         said = [counted(cells, "cell")] if cells else []
         said += [counted(sums, "sum")] if sums else []
         return f"merged {' and '.join(said)}: {listed(moves_text(moved, self._diagram, after))}"
@@ -222,12 +207,12 @@ def _residue(weight: Weight, value: Valuation[int]) -> int:
     return -found if weight.negative else found
 
 
-def _runs(taps: list[int]) -> list[list[int]]:
-    """Rising numbers, cut where one is left out."""
+def _runs(taken: Mapping[int, Stretch]) -> list[list[int]]:
+    """The classes of neighbouring stretches, cut where one is left out."""
     runs: list[list[int]] = []
-    for tap in taps:
-        if runs and runs[-1][-1] == tap - 1:
-            runs[-1].append(tap)
+    for at, stretch in taken.items():
+        if runs and taken[runs[-1][-1]].last == stretch.first - 1:
+            runs[-1].append(at)
         else:
-            runs.append([tap])
+            runs.append([at])
     return runs

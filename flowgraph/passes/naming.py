@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Iterator
-from itertools import count
+from collections.abc import Iterable
 
 from flowgraph.diagram.diagram import Diagram
 
@@ -21,10 +20,11 @@ class Names:
         """The name itself where it is free, else numbered from 2 on; it is taken from now on."""
         return self.fresh_group([name])[0]
 
-    def cells_behind(self, signal: str) -> Iterator[str]:
-        """Fresh names for cells behind a signal, numbered from 1: `x1`, `x2`, and `y3_1` behind `y3`."""
-        for cell in count(1):
-            yield self.fresh(with_cell(signal, cell))
+    def cells_behind(self, signal: str, cells: int, each: bool) -> list[str]:
+        """Fresh names for cells behind a signal: `x1`, `x2`, and `y3_1` behind `y3`; `x_line` for all in one."""
+        if each:
+            return [self.fresh(with_cell(signal, cell)) for cell in range(1, cells + 1)]
+        return [self.fresh(with_cell(signal, "_line"))]
 
     def fresh_group(self, names: Iterable[str]) -> list[str]:
         """Names that belong together: all as given where all are free, else all numbered alike."""
@@ -43,12 +43,12 @@ def beside(neighbour: str, own: str) -> str:
     return own if parts is None else f"{parts['path']}{own}{parts['index']}"
 
 
-def with_cell(name: str, cell: int) -> str:
+def with_cell(name: str, cell: int | str) -> str:
     """The name of a cell behind a signal: `w` and 2 make `w2`; a name that ends in a digit gets `_2`."""
     parts = _PARTS.match(name)
     if parts is None or not parts["own"]:
         return f"{name}_{cell}"
-    between = "_" if parts["own"][-1].isdigit() else ""
+    between = "_" if parts["own"][-1].isdigit() and isinstance(cell, int) else ""
     return f"{parts['path']}{parts['own']}{between}{cell}{parts['index']}"
 
 

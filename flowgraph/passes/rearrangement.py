@@ -83,16 +83,25 @@ class Rearrangement:
                     self.changed.add(node)
 
     def _named(self, exchange: Exchange) -> Moved:
-        """Textbook names for the signal between: w, and w1, w2 .. for its cells, or w_line for one long line."""
+        """Textbook names for the signal between: w, and w1, w2 .. for its cells, or w_line for one long line.
+
+        One line it is where a line moved, or where nothing but the next cell would read some cell.
+        """
         before, _, behind = exchange.signals
-        neighbour = self._network.real(behind)
         lines = [line for node in (before, behind) for line in self._network.lines.get(node, ())]
-        if any(line.length > 1 for line in lines):
+        run_a, run_b = exchange.members_of_runs()
+        read_late = {wire.late for node, run in ((before, run_a), (behind, run_b)) for wire in self._read_by(node, run)}
+        latest = max(read_late)
+        if any(line.length > 1 for line in lines) or not read_late.issuperset(range(1, latest)):
             own = ["w", "w_line"]
         else:
-            own = ["w", *(f"w{cell}" for cell in range(1, 1 + max(exchange.run_a[0].reach, exchange.run_b[-1].own)))]
+            own = ["w", *(f"w{cell}" for cell in range(1, 1 + latest))]
+        neighbour = self._network.real(behind)
         between, *cells = self._names.fresh_group([beside(neighbour, name) for name in own])
         return Moved(exchange, between, cells)
+
+    def _read_by(self, node: str, run: set[str]) -> list[Wire]:
+        return [wire for reader, wire in self._network.readers[node] if reader in run]
 
     def _take_up(self, node: str) -> None:
         """Notes what a node reads, and what the adder reads from which it was split."""

@@ -16,6 +16,7 @@ from flowgraph.diagram.claim import Claim, DiagramIntent, EquationIntent, RatioI
 from flowgraph.diagram.diagram import Counts, Diagram, count, given_numbers
 from flowgraph.diagram.elements import Signal, with_expressions
 from flowgraph.diagram.expression import Expression, names_in, substitute
+from flowgraph.passes.carried import Run, carried, whole_lines
 from flowgraph.passes.change import Change
 from flowgraph.passes.correspondence import prove_correspondence
 from flowgraph.passes.cost import cost
@@ -69,21 +70,20 @@ class Reduction:
         """Cells, multiplies and adds before and after."""
         return count(self.before), count(self.after)
 
-    def merged(self) -> dict[Signal, Signal]:
-        """For each cell of the diagram before that still has one: the cell of the diagram after that does its work."""
-        now = {
-            Signal(line.name, tap): Signal(line.name, tap)
-            for line in self.before.delays()
-            for tap in range(1, line.length + 1)
-        }
+    def carried(self) -> list[Run]:
+        """The cells of the diagram before that still do work, with the cells of the diagram after that do it."""
+        runs = whole_lines(self.before)
         for step in self.steps:
-            lengths = {line.name: line.length for line in step.after.delays()}
-            now = {
-                cell: image
-                for cell, reached in now.items()
-                if (image := step.moved.get(reached, reached)).tap and image.tap <= lengths.get(image.name, 0)
-            }
-        return now
+            runs = carried(runs, step.moved, step.after)
+        return runs
+
+    def merged(self) -> dict[Signal, Signal]:
+        """The same, cell by cell."""
+        return {
+            Signal(run.cell.name, run.cell.tap + at): Signal(run.image.name, run.image.tap + at)
+            for run in self.carried()
+            for at in range(run.cells)
+        }
 
 
 def reduce_diagram(diagram: Diagram) -> Reduction:

@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable
 from dataclasses import replace
+from typing import TypeAlias
 
 from flowgraph.diagram.elements import Delay, Signal
 from flowgraph.passes.network import Network
 from flowgraph.passes.worthwhile import cells_needed
+
+FreshNames: TypeAlias = Callable[[int, bool], list[str]]
+"""Names for so many new cells: one each where all of them are read, else one for the line of them."""
 
 
 class SettledLine:
@@ -18,16 +22,13 @@ class SettledLine:
     """
 
     def __init__(
-        self, network: Network, node: str, read: list[Signal], latest: int, fresh_names: Iterator[str]
+        self, network: Network, node: str, still_read: list[Signal], read_late: set[int], fresh_names: FreshNames
     ) -> None:
-        """`read` are the signals still read as drawn, `latest` how far the other readers reach.
-
-        New cells take the fresh names in turn; behind one line of several cells they become one line too.
-        """
+        """`still_read` are the signals read as drawn, `read_late` how late the other readers read the node."""
         self.cell: dict[int, Signal] = {0: Signal(node)}
         self.added: list[Delay] = []
         self._takes_in: dict[Signal, Signal] = {}
-        self._needed = cells_needed(network, node, read)
+        self._needed = cells_needed(network, node, still_read)
         old = network.lines.get(node, [])
         at: dict[int, list[Signal]] = {}
         for line in old:
@@ -37,21 +38,26 @@ class SettledLine:
                 at.setdefault(network.offset[line.name] + tap, []).append(cell)
                 self._takes_in[cell] = before
                 before = cell
-        late = 0
+        late, latest = 0, max(read_late, default=0)
         while late < latest or self._is_kept(at.get(late + 1, [])):
+            found = self._find(at.get(late + 1, []), self.cell[late])
+            if found is None:
+                break
             late += 1
-            found = self._find(at.get(late, []), self.cell[late - 1])
-            self.cell[late] = found if found is not None else self._add(self.cell[late - 1], fresh_names)
+            self.cell[late] = found
+        if late < latest:  # old cells take in old cells, so behind a new one there are only new ones
+            self._add(late, latest, fresh_names(latest - late, read_late.issuperset(range(late + 1, latest))))
         self.lines = {line.name: self._rest_of(line) for line in old}
 
-    def _add(self, before: Signal, fresh_names: Iterator[str]) -> Signal:
-        """A new cell behind a signal: a longer end of the last new line where no name is left."""
-        name = next(fresh_names, None)
-        if name is None:
-            self.added[-1] = replace(self.added[-1], length=self.added[-1].length + 1)
-        else:
-            self.added.append(Delay(name, before))
-        return Signal(self.added[-1].name, self.added[-1].length)
+    def _add(self, late: int, latest: int, names: list[str]) -> None:
+        """New cells up to the latest reading: one by one where there are names enough, else as one line."""
+        if len(names) < latest - late:
+            self.added = [Delay(names[0], self.cell[late], latest - late)]
+            self.cell.update((late + tap, Signal(names[0], tap)) for tap in range(1, latest - late + 1))
+            return
+        for at, name in zip(range(late + 1, latest + 1), names, strict=False):
+            self.added.append(Delay(name, self.cell[at - 1]))
+            self.cell[at] = Signal(name, 1)
 
     def _is_kept(self, cells: list[Signal]) -> bool:
         return any(cell.tap <= self._needed[cell.name] for cell in cells)

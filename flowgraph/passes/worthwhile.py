@@ -44,7 +44,15 @@ class Exchange:
 
     def members(self) -> set[str]:
         """All nodes of both runs."""
-        return {member for section in self.run_a + self.run_b for member in section.members}
+        run_a, run_b = self.members_of_runs()
+        return run_a | run_b
+
+    def members_of_runs(self) -> tuple[set[str], set[str]]:
+        """All nodes of run A, and all of run B."""
+        run_a, run_b = (
+            {member for section in run for member in section.members} for run in (self.run_a, self.run_b)
+        )
+        return run_a, run_b
 
     def brings_no_cells(self) -> bool:
         """Whether neither end needs cells it did not have: such exchanges do not touch each other."""
@@ -171,7 +179,7 @@ def is_worthwhile(start: _Start, middle: _Middle, end: _End) -> bool:
     """Whether cells are saved as drawn, and none are lost against the diagram with all its lines shared."""
     before = max(start.others, start.reach) + max(middle.own, middle.reach) + max(end.own, end.others)
     after = max(start.others, middle.reach) + max(end.own, start.reach) + max(middle.own, end.others)
-    return saved_as_drawn(start, middle, end) > 0 and before >= after
+    return saved_as_drawn(start, middle, end) > 0 and before > after
 
 
 def saved_as_drawn(start: _Start, middle: _Middle, end: _End) -> int:

@@ -2,11 +2,15 @@
 
 from __future__ import annotations
 
+from textwrap import wrap
+
 from flowgraph.source.diagnostic import Diagnostic
 from flowgraph.source.span import Span
 
 WIDTH = 100
 """How many characters of a long source line are shown around the place."""
+COLUMNS = 80
+"""How wide a mend may become before it goes on in a further line."""
 
 
 def render(diagnostic: Diagnostic) -> str:
@@ -19,8 +23,21 @@ def render(diagnostic: Diagnostic) -> str:
         else:
             lines += [f"{note.span}: {note.message}", *excerpt(note.span)]
     if diagnostic.help:
-        lines.append(f"    mend: {diagnostic.help}")
+        lines += _mend(diagnostic.help)
     return "\n".join(lines)
+
+
+def _mend(text: str) -> list[str]:
+    """What would mend it; further lines stand under the first word. Names are never broken."""
+    lead = "    mend: "
+    return wrap(
+        text,
+        COLUMNS,
+        initial_indent=lead,
+        subsequent_indent=" " * len(lead),
+        break_long_words=False,
+        break_on_hyphens=False,
+    )
 
 
 def excerpt(span: Span) -> list[str]:

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+import errno
 import os
 from collections.abc import Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from pathlib import Path
 
 
@@ -16,17 +17,22 @@ def whole_file(path: str) -> Iterator[Path]:
     what is no plain file, such as a terminal or a pipe, is written directly. Raises OSError at once
     where the folder is missing or closed.
     """
+    if not os.path.basename(path):
+        raise IsADirectoryError(errno.EISDIR, "Is a directory", path)
     target = Path(os.path.realpath(path))
+    if target.is_dir():
+        raise IsADirectoryError(errno.EISDIR, "Is a directory", path)
     if target.exists() and not target.is_file():
         yield target
         return
     beside = target.with_name(f".{target.stem[:100]}.{os.getpid()}{target.suffix}")
     try:
-        beside.touch()
-    except OSError as error:
-        raise type(error)(error.errno, error.strerror, path) from error
-    try:
+        try:
+            beside.touch()
+        except OSError as error:
+            raise type(error)(error.errno, error.strerror, path) from error
         yield beside
         beside.replace(target)
     finally:
-        beside.unlink(missing_ok=True)
+        with suppress(OSError):
+            beside.unlink(missing_ok=True)

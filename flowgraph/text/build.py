@@ -158,15 +158,22 @@ def _contents(scope: Scope, node: s.DelayLine, cells: int, env: Env) -> tuple[Ex
     if len(values) != cells:
         raise scope.fault(
             "starts-length",
-            f"{len(values)} starting content{'s' * (len(values) > 1)} for {cells} cells",
+            f"{len(values)} starting content{'s' * (len(values) > 1)} for {cells} cell{'s' * (cells > 1)}",
             node.starts[0].start,
             node.starts[-1].end,
-            _enough(node, cells),
+            _enough(scope, node, node.starts, cells),
         )
     return values
 
 
-def _enough(node: s.DelayLine, cells: int) -> str:
+def _enough(scope: Scope, node: s.DelayLine, starts: tuple[s.Expr, ...], cells: int) -> str:
+    """The mend for too many or too few starting contents."""
+    if len(starts) == 2 and cells == 1 and all(isinstance(start, s.Figure) for start in starts):
+        whole, _, places = scope.source.text[starts[0].start : starts[1].end].partition(",")
+        if places and not places[0].isspace():
+            return f"a number has a decimal point: write {whole}.{places}"
     if node.by is None:
         return "give one for each name, in the same order"
+    if cells == 1:
+        return "give one"
     return f"give one for all cells, or a list of {cells}: line[1] first"

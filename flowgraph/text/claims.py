@@ -20,12 +20,14 @@ from flowgraph.diagram.elements import Input
 from flowgraph.diagram.expression import Expression, Name, Sample, names_in
 from flowgraph.source.span import Span
 from flowgraph.text import syntax as s
+from flowgraph.text.exact import DECIBELS
 from flowgraph.text.instances import Instance
 from flowgraph.text.instantiate import in_terms_of_user
 from flowgraph.text.linear import check_linear
 from flowgraph.text.meaning import checked, coefficient_leaf, expression, fixed, full_name, whole
 from flowgraph.text.place import arguments, given
 from flowgraph.text.program import Program
+from flowgraph.text.reach import earliest_samples, reach_of_ratio, within_reach
 from flowgraph.text.scope import Env, Scope
 
 
@@ -39,7 +41,9 @@ def claim(scope: Scope, program: Program, diagram: Diagram, line: Instance, read
         case s.RatioLine(output, input_, ratio, late):
             found = checked(scope, expression(scope, ratio, env, _ratio_leaf), ratio)
             reads |= names_in(found)
+            within_reach(scope, reach_of_ratio(found), ratio)
             samples = 0 if late is None else whole(scope, late, env, "a number of samples")
+            within_reach(scope, samples, late or ratio)
             return RatioIntent(_output(scope, output, env), _input(scope, diagram, input_, env), found, samples, span)
         case s.SameAsLine(output, applied):
             return _same_as(scope, program, diagram, _output(scope, output, env), applied, line, reads)
@@ -102,6 +106,7 @@ def _sample(scope: Scope, reference: s.Reference, env: Env) -> Sample | None:
     if next_ - here != 1:
         raise scope.fault("time", "a sample is written name[n] or name[n - k]", reference.start, reference.end)
     base = s.Reference(reference.name, reference.parts[:-1], reference.start, reference.end)
+    within_reach(scope, here, last.place)
     return Sample(full_name(scope, base, env), -here)
 
 
@@ -168,10 +173,13 @@ def _equation(
 
     right = checked(scope, expression(scope, node.right, env, leaf), node.right)
     check_linear(scope, right, node.right)
+    earliest = earliest_samples(right)
     history: list[tuple[str, int, Expression]] = []
     for reference, value in node.history:
-        history.append(_history(scope, diagram, output, reference, value, env))
-        reads |= names_in(history[-1][2])
+        name, early, found = _history(scope, diagram, output, reference, value, env)
+        _expect_read(scope, earliest.get(name, 0), history, (name, early), reference)
+        history.append((name, early, found))
+        reads |= names_in(found)
     reads |= names_in(right)
     return EquationIntent(output, right, tuple(history), span)
 
@@ -205,6 +213,7 @@ def _history(
     last = reference.parts[-1] if reference.parts else None
     early = -whole(scope, last.place, env, "a time") if isinstance(last, s.At) else 0
     base = s.Reference(reference.name, reference.parts[:-1], reference.start, reference.end)
+    within_reach(scope, early, reference)
     name = full_name(scope, base, env)
     if early < 1:
         raise scope.fault(
@@ -216,6 +225,25 @@ def _history(
         )
     _allowed(scope, diagram, output, Sample(name, early), reference)
     return name, early, checked(scope, expression(scope, value, env, coefficient_leaf), value)
+
+
+def _expect_read(
+    scope: Scope, earliest: int, before: list[tuple[str, int, Expression]], sample: tuple[str, int], at: s.Reference
+) -> None:
+    """A value before sample 0 is given once and read by the equation. Raises Fault."""
+    name, early = sample
+    if (name, early) in [(given_name, given_early) for given_name, given_early, _ in before]:
+        raise scope.fault(
+            "defined-twice", f"{name}[-{early}] has a value already", at.start, at.end, "take one of them away"
+        )
+    if early > earliest:
+        raise scope.fault(
+            "unread",
+            f"the equation never reads {name}[-{early}]",
+            at.start,
+            at.end,
+            "take it away" + (f"; the earliest it reads is {name}[-{earliest}]" if earliest else ""),
+        )
 
 
 def _same_as(
@@ -282,4 +310,6 @@ def _decibels(scope: Scope, limit: s.Expr | None, env: Env) -> Fraction | None:
     value, seconds = fixed(scope, limit, env)
     if seconds:
         raise scope.fault("units", "a limit is a number of dB", limit.start, limit.end)
+    if abs(value) > DECIBELS:
+        raise scope.fault("too-large", f"a limit beyond {DECIBELS} dB", limit.start, limit.end)
     return value

@@ -61,6 +61,8 @@ def define_consts(scope: Scope, lines: list[s.Statement]) -> None:
                 waiting[name.name] = line.node
             except Fault as fault:
                 scope.tell(fault.finding)
+                scope.broken.add(name.name)
+                scope.unresolved = True
     names = list(waiting)
     number = {name: at for at, name in enumerate(names)}
     reads = [
@@ -75,6 +77,7 @@ def define_consts(scope: Scope, lines: list[s.Statement]) -> None:
                 scope.fault("follows-itself", f"the const {first} follows itself", where.start, where.end).finding
             )
             scope.broken.update(names[member] for member in group)
+            scope.unresolved = True
             continue
         try:
             scope.consts[first] = fixed(scope, waiting[first].value, EMPTY)

@@ -107,7 +107,7 @@ class Definer:
             )
         full = self._define(node.names[0], line.env, "delay")
         scope.broken.add(full)
-        length = self._length(node.by, line.env)
+        length = cells_of_line(scope, node.by, line.env)
         scope.grow(length, line.start, line.end)
         scope.broken.discard(full)
         scope.lines[full] = length
@@ -116,30 +116,30 @@ class Definer:
         else:
             scope.broken.add(f"{full}[0]")
 
-    def _length(self, by: s.Expr, env: Env) -> int:
-        """How many cells `by` says. Raises Fault."""
-        scope = self.scope
-        cells, seconds = fixed(scope, by, env)
-        if seconds == 1:
-            scope.used_rate = True
-            if scope.rate is None:
-                raise scope.fault(
-                    "rate-missing", "a length in time needs a rate", by.start, by.end, "add a line such as: rate 48 kHz"
-                )
-            cells *= scope.rate
-            if cells.denominator != 1:
-                below = cells.numerator // cells.denominator
-                raise scope.fault(
-                    "length",
-                    f"this time is {float(cells):g} samples, which is no whole number",
-                    by.start,
-                    by.end,
-                    f"write by {below} or by {below + 1}",
-                )
-        elif seconds:
-            raise scope.fault("units", "a length is a number of cells or a time", by.start, by.end)
-        if cells.denominator != 1 or cells < 1:
+
+def cells_of_line(scope: Scope, by: s.Expr, env: Env) -> int:
+    """How many cells `by` says. Raises Fault."""
+    cells, seconds = fixed(scope, by, env)
+    if seconds == 1:
+        scope.used_rate = True
+        if scope.rate is None:
             raise scope.fault(
-                "length", f"a line has a whole number of cells, at least 1, and this is {cells}", by.start, by.end
+                "rate-missing", "a length in time needs a rate", by.start, by.end, "add a line such as: rate 48 kHz"
             )
-        return int(cells)
+        cells *= scope.rate
+        if cells.denominator != 1:
+            below = cells.numerator // cells.denominator
+            raise scope.fault(
+                "length",
+                f"this time is {float(cells):g} samples, which is no whole number",
+                by.start,
+                by.end,
+                f"write by {below} or by {below + 1}",
+            )
+    elif seconds:
+        raise scope.fault("units", "a length is a number of cells or a time", by.start, by.end)
+    if cells.denominator != 1 or cells < 1:
+        raise scope.fault(
+            "length", f"a line has a whole number of cells, at least 1, and this is {cells}", by.start, by.end
+        )
+    return int(cells)

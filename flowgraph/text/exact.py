@@ -8,7 +8,10 @@ from functools import lru_cache
 BITS = 4096
 """The most bits of a numerator or denominator."""
 ELEMENTS = 2_000_000
-"""The most elements of a diagram after expansion; every cell of a long line counts as one."""
+"""The most elements of a diagram after expansion; every cell of a long line counts as one.
+No claim looks further back either."""
+DECIBELS = 10_000
+"""The largest limit of a gain, of either sign."""
 LEVELS = 64
 """The most levels of brackets, blocks, uses and includes."""
 TERMS = 200_000

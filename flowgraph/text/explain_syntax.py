@@ -31,6 +31,8 @@ _MARKS = {
     "DB": "dB",
 }
 _DEFINE = "const|adder|gain|wire|delay|use|cascade|repeat"
+_DIGITS = re.compile(r"[0-9]+(?![A-Za-z0-9_.])")
+_DIGITS_BEFORE = re.compile(r"(?<![A-Za-z0-9_.])[0-9]+\Z")
 _BEFORE = re.compile(r"([A-Za-z_][A-Za-z0-9_]*|[0-9][0-9_.]*|\S)\s*\Z")
 
 
@@ -70,7 +72,7 @@ class _Place:
             return self._told("not-yet", f"`{later}` is not known here yet")
         if self._found == "dB":
             return self._told("decibels", "dB stands only in require", "in a coefficient write 10^(-6/20)")
-        return self._figure() or self._sign() or self._call() or self._plain(expected)
+        return self._comma() or self._figure() or self._sign() or self._call() or self._plain(expected)
 
     def _first_word(self) -> Diagnostic:
         """A line begins with a word that begins no line."""
@@ -101,11 +103,31 @@ class _Place:
                 return "gain of a sum"
         return ""
 
+    def _comma(self) -> Diagnostic | None:
+        """0,5 for 0.5, and a line that ends with a semicolon."""
+        if self._found == ";":
+            return self._told("syntax", "a line ends without a sign of its own", "take the ; away")
+        text = self._source.text
+        comma = self._at if self._found == "," else self._at - 1
+        if text[comma] != "," or comma <= self._start:
+            return None
+        whole, places = _DIGITS_BEFORE.search(text, self._start, comma), _DIGITS.match(text, comma + 1, self._end)
+        if whole is None or places is None:
+            return None
+        return self._told(
+            "number", "a number has a decimal point", f"write {whole.group()}.{places.group()}", comma, comma + 1
+        )
+
     def _figure(self) -> Diagnostic | None:
-        """Numbers written in another way: .5, 2., 2x, 48 KHz."""
+        """Numbers written in another way: .5, 2., 2x, 48 KHz, 48k, 1 sample."""
         if self._found == "." and (re.match(r"\.[0-9]", self._rest()) or self._before.isdigit()):
             return self._told("number", "a number starts and ends with a digit", "write 0.5 or 2")
         if re.fullmatch(r"[0-9][0-9_.]*", self._before) and re.fullmatch(r"[A-Za-z_]\w*", self._found):
+            if self._found == "sample":
+                return self._told("syntax", "sample cannot stand here", "write samples, for one of them too")
+            if self._found in ("k", "K", "M") and re.match(r"rate\b", self._line):
+                unit = "MHz" if self._found == "M" else "kHz"
+                return self._told("unit", f"{self._found} is no unit", f"write {self._before} {unit}")
             unit = next((unit for unit in UNITS if unit.lower() == self._found.lower()), "")
             mend = f"did you mean {unit}?" if unit else f"write {self._before}*{self._found}"
             what = "is no unit" if unit else "follows a number without an operator"

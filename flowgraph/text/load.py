@@ -13,6 +13,7 @@ from flowgraph.source.span import Source, Span
 from flowgraph.text import syntax as s
 from flowgraph.text.elaborate import elaborate
 from flowgraph.text.exact import FILE_LENGTH, LEVELS
+from flowgraph.text.measure import refuse_large
 from flowgraph.text.number_file import path_below
 from flowgraph.text.parse_file import parse_file
 from flowgraph.text.program import Program
@@ -64,8 +65,10 @@ class _Loader:
         if source is not None:
             self._take(source, [os.path.realpath(name)])
         program = Program(self.texts, elaborate, broken=self.broken)
+        refuse_large(program)
         for known in self.texts:
-            program.make(known, None)
+            if known not in program.left_alone:
+                program.make(known, None)
         diagrams: list[Diagram] = []
         told: dict[tuple[str, str, int, int, str], Diagnostic] = {}
         for known in self.texts:
@@ -73,9 +76,8 @@ class _Loader:
                 for finding in made.findings:
                     key = (finding.code, finding.span.file, finding.span.start, finding.span.end, finding.message)
                     told.setdefault(key, finding)
-            shown = program.versions(known)[0].diagram
-            if shown is not None:
-                diagrams.append(shown)
+            shown = [made.diagram for made in program.versions(known)[:1] if made.diagram is not None]
+            diagrams.extend(shown)
         findings = sorted([*self.findings, *told.values()], key=Diagnostic.order)
         return Loaded(tuple(diagrams), tuple(findings))
 

@@ -23,7 +23,7 @@ from flowgraph.diagram.expression import (
 )
 from flowgraph.text import syntax as s
 from flowgraph.text.exact import BITS, ELEMENTS, TERMS, TooLargeError
-from flowgraph.text.quantities import InexactError, UnequalPowersError, as_expression, seconds_of, value_of
+from flowgraph.text.quantities import InexactError, UnequalPowersError, as_expression, plain_value, seconds_of, value_of
 from flowgraph.text.scope import Env, Fault, Fixed, Scope
 from flowgraph.text.words import names_in_text, nearest
 
@@ -157,13 +157,20 @@ def expression(scope: Scope, expr: s.Expr, env: Env, leaf: Leaf) -> Expression:
             signed = [Negative(part) if term.negative else part for term, part in zip(terms, parts, strict=True)]
             return Sum(tuple(signed))
         case s.Scaled(factors):
-            return _scaled([(divides, expression(scope, body, env, leaf)) for divides, body in factors])
+            worked = [(divides, expression(scope, body, env, leaf)) for divides, body in factors]
+            for (divides, factor), (_, body) in zip(worked, factors, strict=True):
+                if divides and plain_value(factor) == 0:
+                    raise scope.fault("zero-division", "this divides by zero", expr.start, body.end)
+            return _scaled(worked)
         case s.Raised():
             return _raised(scope, expr, env, leaf)
         case s.Bracket(inner):
             return expression(scope, inner, env, leaf)
         case s.Call(function, inner):
-            return Function(cast(FunctionName, function), expression(scope, inner, env, leaf))
+            argument = expression(scope, inner, env, leaf)
+            if function == "sqrt" and (plain_value(argument) or 0) < 0:
+                raise scope.fault("root", "this is the root of a negative number", expr.start, expr.end)
+            return Function(cast(FunctionName, function), argument)
         case s.Fold(kind):
             folded = [expression(scope, expr.body, inner, leaf) for inner in steps(scope, expr, env)]
             if len(folded) < 2:
@@ -232,9 +239,11 @@ def _raised(scope: Scope, expr: s.Raised, env: Env, leaf: Leaf) -> Expression:
             "an exponent is a whole number",
             at.start,
             at.end,
-            "only 10 may have another one, as in 10^(-6/20); for a root write sqrt( )",
+            "only 10 may have another one, as in 10^(-6/20); for a root write sqrt(..)",
         )
     limit = ELEMENTS if base == Name("z") else BITS
+    if exponent < 0 and plain_value(base) == 0:
+        raise scope.fault("zero-division", "this divides by zero", expr.start, expr.end)
     if abs(exponent) > limit:
         raise scope.fault("too-large", f"an exponent beyond {limit}", at.start, at.end)
     return Power(base, exponent)
@@ -245,6 +254,7 @@ def const_leaf(scope: Scope, reference: s.Reference, env: Env) -> Expression:
     found = _known_number(scope, reference, env)
     if found is not None:
         return found
+    refuse_label(scope, reference, env)
     name = full_name(scope, reference, env)
     if name in scope.broken or reference.name in scope.broken:
         raise scope.silent()
@@ -265,6 +275,7 @@ def coefficient_leaf(scope: Scope, reference: s.Reference, env: Env) -> Expressi
     found = _known_number(scope, reference, env)
     if found is not None:
         return found
+    refuse_label(scope, reference, env)
     name = full_name(scope, reference, env)
     if name in scope.coefs:
         return Name(name)
@@ -292,6 +303,21 @@ def coefficient_leaf(scope: Scope, reference: s.Reference, env: Env) -> Expressi
             reference.end,
         )
     raise undefined(scope, name, reference)
+
+
+def refuse_label(scope: Scope, reference: s.Reference, env: Env) -> None:
+    """Raises Fault where the name is a label of the repeats around it: it only stands in brackets."""
+    label = env.get(reference.name)
+    if not isinstance(label, str):
+        return
+    family = next((name.removesuffix(f"[{label}]") for name in scope.defined if name.endswith(f"[{label}]")), "NAME")
+    raise scope.fault(
+        "label-alone",
+        f"{reference.name} is a label of this repeat, and no signal or number",
+        reference.start,
+        reference.end,
+        f"write the name it belongs to in front, such as {family}[{reference.name}]",
+    )
 
 
 def _known_number(scope: Scope, reference: s.Reference, env: Env) -> Expression | None:

@@ -54,7 +54,7 @@ def place_cascade(scope: Scope, program: Program, full: str, applied: s.Applicat
             applied.diagram.end,
             "spell it out with use lines",
         )
-    rows = _rows(scope, applied, line)
+    rows = rows_of_cascade(scope, applied, line)
     fed = arguments(scope, diagram, applied)
     scope.grow(made.size * rows, line.start, line.end)
     scope.broken.discard(full)
@@ -73,7 +73,7 @@ def place_cascade(scope: Scope, program: Program, full: str, applied: s.Applicat
     return copies
 
 
-def _rows(scope: Scope, applied: s.Application, line: Instance) -> int:
+def rows_of_cascade(scope: Scope, applied: s.Application, line: Instance) -> int:
     """How many copies the `each` arrays of a cascade give. Raises Fault."""
     lengths: list[tuple[s.Reference, int]] = []
     for binding in applied.bindings:
@@ -152,6 +152,15 @@ def arguments(scope: Scope, diagram: Diagram, applied: s.Application) -> dict[st
 
 
 def _by_name(scope: Scope, diagram: Diagram, inputs: list[str], applied: s.Application, value: s.Reference) -> Fault:
+    if len(inputs) < 2:
+        fed = f"{len(applied.arguments)} signal{'s' * (len(applied.arguments) > 1)}"
+        return scope.fault(
+            "input-names",
+            f"{diagram.name} has {'1 input' if inputs else 'no input'} and is fed with {fed}",
+            value.start,
+            value.end,
+            "take the others away" if inputs else "a diagram without an input cannot be used",
+        )
     written = ", ".join(f"{port} = .." for port in inputs)
     return scope.fault(
         "input-names",

@@ -36,6 +36,10 @@ class Program:
     open: list[str] = field(default_factory=list)
     broken: set[str] = field(default_factory=set)
     """Diagrams that a file tried to define and that could not be read."""
+    too_large: set[str] = field(default_factory=set)
+    """Diagrams beyond the bound by what they use."""
+    left_alone: set[str] = field(default_factory=set)
+    """The large ones that those are built from."""
 
     def make(self, name: str, rate: Fraction | None) -> Elaborated:
         """The diagram at a rate: its own where it has one, else the user's."""
@@ -70,6 +74,8 @@ class Program:
                 name.end,
                 "a diagram is built from others, never from itself",
             )
+        if name.text in self.too_large:
+            raise scope.silent()
         if len(self.open) > LEVELS:
             raise scope.fault("too-deep", f"diagrams used more than {LEVELS} deep", name.start, name.end)
         made = self.make(name.text, scope.rate)

@@ -18,7 +18,7 @@ from flowgraph.diagram.expression import (
     Sample,
     Sum,
 )
-from flowgraph.text.exact import SECONDS, exact_power, within_bits
+from flowgraph.text.exact import SECONDS, TooLargeError, exact_power, within_bits
 
 
 class UnequalPowersError(ValueError):
@@ -54,6 +54,14 @@ def value_of(expression: Expression, known: Mapping[str, Fraction]) -> Fraction:
             return exact_power(value_of(base, known), exponent.numerator)
         case _:
             raise InexactError("no exact value")
+
+
+def plain_value(expression: Expression) -> Fraction | None:
+    """The exact value of an expression made of numbers alone; None for every other."""
+    try:
+        return value_of(expression, {})
+    except (InexactError, TooLargeError, ZeroDivisionError):
+        return None
 
 
 def seconds_of(expression: Expression, known: Mapping[str, Fraction | None]) -> Fraction | None:

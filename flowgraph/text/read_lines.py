@@ -18,6 +18,7 @@ _MARK = re.compile(r'"[^"\n]*"?|#[^\n]*|\n|[()\[\]{}]|[^\x20-\x7e\t\r\n]+')
 _GOES_ON = (",", "+", "-", "*", "/", "^", "=", "..")
 _VISIBLE = re.compile(r"\S")
 _OPERATOR = re.compile(r"\.\.|<=|>=|[-+*/^=,.<>]")
+_BEGINS_BLOCK = re.compile(r"(?:diagram|repeat)\s")
 _PLAIN = {
     "\u2212": "-",
     "\u2013": "-",
@@ -223,7 +224,7 @@ class _Reader:
         self._from = at + 1
         if self._goes_on():
             self._unfinished("but here a block begins")
-        head = self._cut()
+        head = self._cut() or self._head_above(at)
         if head is None:
             self._report(
                 "block-alone",
@@ -237,6 +238,20 @@ class _Reader:
             self._report("too-deep", f"blocks more than {LEVELS} deep", at, at + 1)
             self._broken = False
         self._blocks.append(Block(head or Line(at, at, True)))
+
+    def _head_above(self, at: int) -> Line | None:
+        """The diagram or repeat line above a { that begins a line of its own; that is told."""
+        lines = self._blocks[-1].lines
+        line = lines[-1] if lines else None
+        if not isinstance(line, Line) or line.broken or not _BEGINS_BLOCK.match(self._text, line.start):
+            return None
+        word = self._text[line.start : line.end].split()[0]
+        self._report(
+            "block-alone", "this { stands on a line of its own", at, at + 1, f"put it at the end of the {word} line"
+        )
+        self._broken = False
+        lines.pop()
+        return line
 
     def _close_block(self, at: int) -> None:
         self._look_at(at)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from flowgraph.text import syntax as s
-from flowgraph.text.meaning import full_name, undefined
+from flowgraph.text.meaning import full_name, refuse_label, undefined
 from flowgraph.text.scope import Env, Fault, Scope
 from flowgraph.text.signals import is_signal
 
@@ -44,6 +44,10 @@ def refuse(scope: Scope, term: s.Expr, env: Env) -> Fault:
             silent = name in scope.broken
             return scope.silent() if silent else undefined(scope, full_name(scope, reference, env), reference)
     text = _text(scope, term)
+    if isinstance(term, s.Reference):
+        refuse_label(scope, term, env)
+    if isinstance(term, s.Scaled) and isinstance(term.factors[-1].body, s.Reference):
+        refuse_label(scope, term.factors[-1].body, env)
     if not found:
         return scope.fault(
             "constant-term", f"{text} is a constant; an adder takes signals", term.start, term.end, CONSTANT

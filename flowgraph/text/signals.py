@@ -5,7 +5,7 @@ from __future__ import annotations
 from flowgraph.diagram.elements import Signal
 from flowgraph.source.diagnostic import Note
 from flowgraph.text import syntax as s
-from flowgraph.text.meaning import index, undefined, whole
+from flowgraph.text.meaning import index, refuse_label, undefined, whole
 from flowgraph.text.scope import Env, Fault, Scope
 
 
@@ -15,7 +15,7 @@ def is_signal(scope: Scope, reference: s.Reference, env: Env) -> bool:
     if not reference.parts and (name in env or name in scope.consts or name in ("rate", "half", "pi")):
         return False
     if name in scope.kinds:
-        return scope.kinds[name] != "coefficient"
+        return scope.kinds[name] not in ("coefficient", "const")
     return True
 
 
@@ -68,18 +68,21 @@ def _direct(scope: Scope, reference: s.Reference, env: Env) -> tuple[str, Signal
         elif name in scope.lines:
             return _tap(scope, name, part, reference, env)
         else:
-            name += f"[{_member(scope, reference, part, env)}]"
+            name += f"[{_member(scope, name, reference, part, env)}]"
     found = scope.signals.get(name)
     if found is None and name not in scope.aliases:
+        refuse_label(scope, reference, env)
         raise _nothing(scope, name, reference, env)
     return name, found
 
 
-def _member(scope: Scope, reference: s.Reference, part: s.At, env: Env) -> int | str:
-    """An index, unless it is a time such as n - 1. Raises Fault."""
+def _member(scope: Scope, name: str, reference: s.Reference, part: s.At, env: Env) -> int | str:
+    """An index, unless it is a time such as n - 1. Raises Fault, silent where `name` may be a line told before."""
     try:
         return index(scope, part, env)
     except Fault:
+        if name in scope.broken:
+            raise scope.silent() from None
         _refuse_time(scope, reference, part, env)
         raise
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from read_diagram import read_diagram, read_diagrams
 
 from flowgraph.claims.verdict import Counterexample, Verdict
-from flowgraph.claims.verify import verify
+from flowgraph.claims.verify import verify, verify_all
 
 
 def first(text: str) -> Verdict:
@@ -211,7 +211,9 @@ def test_requirements_of_an_open_diagram_are_judged_at_each_use() -> None:
             intent y / x = 1/((1 - 0.5*z^-1)*(1 - 1.5*z^-1))
         }"""
     diagrams = read_diagrams(text)
-    assert [verdict.outcome for verdict in verify(diagrams["section"])] == ["proved"]
+    together = verify_all([diagrams["section"], diagrams["user"]], set())
+    assert [verdict.outcome for verdict in together[0][1]] == ["proved"]
+    assert [verdict.outcome for verdict in verify(diagrams["section"])] == ["proved", "undecided"]
     verdicts = verify(diagrams["user"])
     assert [verdict.outcome for verdict in verdicts] == ["proved", "proved", "refuted"]
     assert verdicts[2].use is not None

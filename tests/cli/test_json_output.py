@@ -114,7 +114,7 @@ def test_verify(capsys: pytest.CaptureFixture[str]) -> None:
         "claim": "1/4",
         "coefficients": {},
     }
-    assert band["verdicts"][4]["use"] == "band.sfg:18:5"
+    assert band["verdicts"][4]["use"] == {"name": "s", "place": "band.sfg:18:5"}
 
 
 def test_analyse(capsys: pytest.CaptureFixture[str]) -> None:

@@ -242,7 +242,7 @@ def test_verify_never_breaks_a_name(capsys: pytest.CaptureFixture[str]) -> None:
 
 
 def test_verify_tells_what_is_left_to_the_uses(capsys: pytest.CaptureFixture[str]) -> None:
-    """A requirement that needs values has no verdict while a coefficient is open, and is not passed over in silence."""
+    """A requirement that needs values is judged where they are given, and said to be."""
     told = page(
         capsys,
         "verify",
@@ -256,6 +256,12 @@ diagram d {
     intent y / x = 1 / (1 - a*z^-1)
     require stable
 }
+diagram user {
+    input  x
+    output y
+    use    y = d(x) with a = 1/2
+    intent y / x = 1 / (1 - 1/2*z^-1)
+}
 """,
     )
     assert told == (
@@ -263,4 +269,11 @@ diagram d {
         "  proved     intent y / x = 1 / (1 - a*z^-1)\n"
         "               exact (d.sfg:7:5)\n"
         "  at uses    require stable (d.sfg:8:5)\n"
+        "\n"
+        "user: 2 proved\n"
+        "  proved     intent y / x = 1 / (1 - 1/2*z^-1)\n"
+        "               exact (d.sfg:14:5)\n"
+        "  proved     require stable\n"
+        "               exact (d.sfg:8:5)\n"
+        "               with the values given to y (d.sfg:13:5)\n"
     )

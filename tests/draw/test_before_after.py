@@ -60,7 +60,7 @@ def test_headings_carry_the_counts() -> None:
     assert texts == [
         "Before: 4 delay cells",
         "After merging: 2 delay cells",
-        "Same letter and fill = same samples.",
+        "Same letter and fill = cells that become one.",
         "Double frame = the one cell kept, ×2 = it stands for two.",
     ]
 

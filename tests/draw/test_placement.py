@@ -3,17 +3,13 @@
 from __future__ import annotations
 
 from board import board
-from named import DF2, fir, moving_average
+from named import DF1, DF2, fir, moving_average
 
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.draw.draw import draw_picture
 from flowgraph.draw.model import fold
 from flowgraph.draw.place import place
 from flowgraph.draw.rails import find_rails
-
-
-def names(diagram_line: str) -> list[str]:
-    return [part.strip() for part in diagram_line.split(",")]
 
 
 def test_grid_of_direct_form_two() -> None:
@@ -85,3 +81,19 @@ def test_mean_without_gains_is_a_ladder_too() -> None:
     """A moving average has rungs without triangles, and one gain at its output."""
     picture = draw_picture(moving_average(5))
     assert [shape.facing for shape in picture.shapes if shape.kind == "triangle"] == ["E"]
+
+
+def test_grid_of_direct_form_one() -> None:
+    """Both sums stand side by side on the rail, each with its circle below; the lines hang at the far sides."""
+    assert place(fold(DF1)).dump().splitlines() == [
+        "input x: 0,0 E @1",
+        "delay x1: 1,1 S @1",
+        "delay x2: 1,3 S @1",
+        "delay y1: 6,1 S @6",
+        "delay y2: 6,3 S @6",
+        "adder v: 3,0 E",
+        "adder v': 3,2 N",
+        "adder y: 4,0 E @6",
+        "adder y': 4,2 N",
+        "output y: 7,0 W",
+    ]

@@ -26,6 +26,15 @@ def chain(length: int) -> str:
     )
 
 
+def doubling(levels: int) -> str:
+    """Diagrams that each use the one before twice."""
+    first = "diagram d0 {\n input x\n output y\n delay y = x\n intent y / x = z^-1\n}\n"
+    return first + "".join(
+        f"diagram d{k + 1} {{\n input x\n output y\n use a = d{k}(x)\n use y = d{k}(a)\n intent y / x = z^-2\n}}\n"
+        for k in range(levels)
+    )
+
+
 HOSTILE = {
     "an empty file": ("", "there is no diagram in this file"),
     "a range of 10^12": (
@@ -71,6 +80,7 @@ HOSTILE = {
         "this total makes more than 200000 terms of its line",
     ),
     "diagrams used 100 deep": (chain(100), "diagrams used more than 64 deep"),
+    "diagrams that double 40 times": (doubling(40), "the diagram grows beyond 2000000 elements and cells here"),
     "a zero byte": ("diagram a\0 {", "this is no text file in UTF-8"),
 }
 
@@ -81,6 +91,15 @@ def test_hostile_text_is_told(text: str, message: str) -> None:
     findings = load_text(text).findings
     assert message in [found.message for found in findings]
     assert len("".join(render(found) for found in findings)) < 4000
+
+
+def test_what_cannot_be_built_is_not_begun() -> None:
+    """The size of a used diagram is known before its copies are made; the small ones are built all the same."""
+    loaded = load_text(doubling(40))
+    [found] = loaded.findings
+    assert found.code == "too-large"
+    assert [diagram.name for diagram in loaded.diagrams] == [f"d{k}" for k in range(len(loaded.diagrams))]
+    assert sum(len(diagram.elements) for diagram in loaded.diagrams) < 100_000
 
 
 def test_long_chains_of_names_are_no_trouble() -> None:

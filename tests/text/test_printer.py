@@ -126,7 +126,7 @@ diagram station {
         use low[ch] = section(in[ch]) with b0 = g, a1 = 1/4
         delay line[ch] = low[ch] by 1 ms starts 1
         adder out[ch] = h[0]*low[ch] + h[1]*line[ch][3] - h[2]*line[ch][end]
-        intent out[ch][n] = g*in[ch][n], in[ch][-1] = 1
+        intent out[ch][n] = g*in[ch][n] + in[ch][n-1], in[ch][-1] = 1
         require "SR-7" gain out[ch] / in[ch] at 50 Hz within -3 .. 2.5 dB
     }
     require stable
@@ -162,9 +162,9 @@ def test_a_whole_diagram_prints_like_this() -> None:
         "    delay line[right] = low_right_y by 8 starts 1\n"
         "    adder out[right] = h[0]*low_right_y + h[1]*line[right][3] - h[2]*line[right][8]\n"
         "    row out[left], out[right]\n"
-        "    intent out[left][n] = g*in[left][n], in[left][-1] = 1\n"
+        "    intent out[left][n] = g*in[left][n] + in[left][n-1], in[left][-1] = 1\n"
         '    require "SR-7" gain out[left] / in[left] at 50 Hz within -3 .. 2.5 dB\n'
-        "    intent out[right][n] = g*in[right][n], in[right][-1] = 1\n"
+        "    intent out[right][n] = g*in[right][n] + in[right][n-1], in[right][-1] = 1\n"
         '    require "SR-7" gain out[right] / in[right] at 50 Hz within -3 .. 2.5 dB\n'
         "    require stable\n"
         "    require cells <= 20\n"
