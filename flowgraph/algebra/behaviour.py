@@ -22,7 +22,6 @@ from flowgraph.diagram.expression import (
     Quotient,
     Sum,
     children,
-    names_in,
 )
 
 R = TypeVar("R")
@@ -82,17 +81,18 @@ class RatioBehaviour:
     def expressions(self) -> list[Expression]:
         """The largest parts of the ratio that do not read z."""
         found: dict[Expression, None] = {}
+        with_z = parts_with_z(self.ratio)
         waiting = [self.ratio]
         while waiting:
             part = waiting.pop()
-            if "z" not in names_in(part):
+            if id(part) not in with_z:
                 found[part] = None
             else:
                 waiting.extend(children(part))
         return list(found)
 
     def responses(self, ring: Ring[R], pairs: list[Pair]) -> dict[Pair, tuple[R, list[R]]]:
-        upper, lower = ratio_in(self.ratio, ring)
+        upper, lower = ratio_in(self.ratio, ring, parts_with_z(self.ratio))
         return dict.fromkeys(pairs, (ring.times(upper, ring.late(self.late)), [lower]))
 
     def extent(self) -> Extent:
@@ -116,17 +116,35 @@ def _late_bound(expression: Expression) -> int:
     return total
 
 
-def ratio_in(expression: Expression, ring: Ring[R]) -> tuple[R, R]:
-    """Numerator and denominator of a ratio in z over a ring that knows w = z^-1."""
-    if "z" not in names_in(expression):
+def parts_with_z(expression: Expression) -> set[int]:
+    """The identities of all parts of an expression that read z, found in one walk."""
+    found: set[int] = set()
+    walk = [(expression, False)]
+    while walk:
+        part, entered = walk.pop()
+        if entered:
+            if part == Name("z") or any(id(inner) in found for inner in children(part)):
+                found.add(id(part))
+        else:
+            walk.append((part, True))
+            walk.extend((inner, False) for inner in children(part))
+    return found
+
+
+def ratio_in(expression: Expression, ring: Ring[R], with_z: set[int]) -> tuple[R, R]:
+    """Numerator and denominator of a ratio in z over a ring that knows w = z^-1.
+
+    `with_z` are the parts_with_z of the ratio.
+    """
+    if id(expression) not in with_z:
         return ring.coefficient(expression), ring.one
     match expression:
         case Name():
             return ring.one, ring.late(1)
         case Sum(terms):
-            upper, lower = ratio_in(terms[0], ring)
+            upper, lower = ratio_in(terms[0], ring, with_z)
             for term in terms[1:]:
-                other_upper, other_lower = ratio_in(term, ring)
+                other_upper, other_lower = ratio_in(term, ring, with_z)
                 if other_lower == lower:
                     upper = ring.plus(upper, other_upper)
                 else:
@@ -134,22 +152,22 @@ def ratio_in(expression: Expression, ring: Ring[R]) -> tuple[R, R]:
                     lower = ring.times(lower, other_lower)
             return upper, lower
         case Product(factors):
-            upper, lower = ratio_in(factors[0], ring)
+            upper, lower = ratio_in(factors[0], ring, with_z)
             for factor in factors[1:]:
-                other_upper, other_lower = ratio_in(factor, ring)
+                other_upper, other_lower = ratio_in(factor, ring, with_z)
                 upper, lower = ring.times(upper, other_upper), ring.times(lower, other_lower)
             return upper, lower
         case Negative(inner):
-            upper, lower = ratio_in(inner, ring)
+            upper, lower = ratio_in(inner, ring, with_z)
             return ring.minus(ring.zero, upper), lower
         case Quotient(above, below):
-            upper, lower = ratio_in(above, ring)
-            other_upper, other_lower = ratio_in(below, ring)
+            upper, lower = ratio_in(above, ring, with_z)
+            other_upper, other_lower = ratio_in(below, ring, with_z)
             if other_upper == ring.zero:
                 raise ZeroDivisionError("the ratio divides by zero")
             return ring.times(upper, other_lower), ring.times(lower, other_upper)
         case Power(base, exponent):
-            return _power(ratio_in(base, ring), exponent.numerator, base, ring)
+            return _power(ratio_in(base, ring, with_z), exponent.numerator, base, ring)
         case _:
             raise ValueError(f"no ratio in z: {expression}")
 

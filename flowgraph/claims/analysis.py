@@ -42,7 +42,7 @@ class Analysis:
 
     `named` and `equations` are None where the polynomials with names grow beyond the work limit. What needs numbers
     is None where a coefficient has no value; `exact` is False where one was rounded to a double.
-    `order` is the least number of cells, None beyond CELL_LIMIT cells.
+    `order` is the least number of cells; beyond CELL_LIMIT cells it is known for a single response only.
     """
 
     cells: int
@@ -102,10 +102,17 @@ def analyse(diagram: Diagram) -> Analysis:
         poles,
         stability,
         numbers.exact,
-        found.order if found else None,
+        found.order if found else _order_of_one(diagram, transfers),
         found.hidden if found else (),
         tuple(remarks),
     )
+
+
+def _order_of_one(diagram: Diagram, transfers: dict[tuple[str, str], NumberTransfer]) -> int | None:
+    """The least number of cells where one response from rest is all there is: its degree in lowest terms."""
+    if len(transfers) != 1 or any(delay.starts for delay in diagram.delays()):
+        return None
+    return next(iter(transfers.values())).order()
 
 
 def zeros(transfer: NumberTransfer) -> list[Root] | None:

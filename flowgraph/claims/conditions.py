@@ -10,6 +10,7 @@ from flowgraph.diagram.expression import (
     ONE,
     Expression,
     Function,
+    Name,
     Negative,
     Power,
     Product,
@@ -64,7 +65,7 @@ def _not_zero(lower: Expression) -> list[str]:
 
 def _first_coefficient(ratio: Expression) -> tuple[int, Expression]:
     """The lowest power of z^-1 in a ratio in z, and its coefficient."""
-    if "z" not in names_in(ratio):
+    if not reads_z(ratio):
         return 0, ratio
     match ratio:
         case Negative(inner):
@@ -89,3 +90,14 @@ def _first_coefficient(ratio: Expression) -> tuple[int, Expression]:
             return late * exponent.numerator, first if first == ONE else Power(first, exponent)
         case _:
             return -1, ONE
+
+
+def reads_z(expression: Expression) -> bool:
+    """Whether an expression reads z anywhere."""
+    waiting = [expression]
+    while waiting:
+        part = waiting.pop()
+        if part == Name("z"):
+            return True
+        waiting.extend(children(part))
+    return False

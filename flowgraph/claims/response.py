@@ -10,7 +10,7 @@ from typing import Generic, Protocol, Self, TypeVar
 
 from flint import arb, ctx, nmod
 
-from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour, RatioBehaviour, ratio_in
+from flowgraph.algebra.behaviour import Behaviour, DiagramBehaviour, RatioBehaviour, parts_with_z, ratio_in
 from flowgraph.algebra.residues import ResidueArithmetic, drawn_prime
 from flowgraph.algebra.solve import STARTS
 from flowgraph.algebra.valuation import Valuation
@@ -162,8 +162,9 @@ def _ratio_series(ratio: Expression, late: int, numbers: Numbers[Q], samples: in
     """
     most = samples + powers_of_z(ratio)
     length = samples
+    with_z = parts_with_z(ratio)
     while True:
-        upper, lower = ratio_in(ratio, _Polynomials(numbers, length))
+        upper, lower = ratio_in(ratio, _Polynomials(numbers, length), with_z)
         skipped = next((at for at, value in enumerate(lower) if numbers.differ(value, numbers.zero)), None)
         if length >= (most if skipped is None else skipped + samples):
             break

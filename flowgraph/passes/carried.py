@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
 from collections.abc import Iterable, Mapping
+from itertools import pairwise
 from typing import NamedTuple
 
 from flowgraph.diagram.diagram import Diagram
@@ -62,7 +63,7 @@ def carried(runs: Iterable[Run], moved: Mapping[Signal, Signal], after: Diagram)
 
 
 def shared(runs: Iterable[Run]) -> list[Shared]:
-    """The cells after that do the work of two or more, as long runs as the same cells share; in the order of the runs."""
+    """The cells after that do the work of two or more, in runs as long as the same cells share them."""
     by_line: dict[str, list[Run]] = {}
     for run in runs:
         by_line.setdefault(run.image.name, []).append(run)
@@ -79,7 +80,7 @@ def _shared_on_line(runs: list[Run]) -> list[Shared]:
     found: list[Shared] = []
     here: dict[int, None] = {}
     cuts = sorted({*begins, *ends})
-    for tap, next_tap in zip(cuts, cuts[1:], strict=False):
+    for tap, next_tap in pairwise(cuts):
         for at in ends.get(tap, ()):
             del here[at]
         here.update(dict.fromkeys(begins.get(tap, ())))

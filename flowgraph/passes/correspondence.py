@@ -110,15 +110,20 @@ class _Walk:
         wanted = terms_of(other)
         if wanted is None or self._is_wire(found, image):
             wanted = [(image, UNIT)]
-        if [read for read, _ in found] == [read for read, _ in wanted] and all(
-            self._same([weight], [other_weight]) for (_, weight), (_, other_weight) in zip(found, wanted, strict=True)
-        ):
+        # a + b = b + a in every word, so that the first two terms may change places.
+        if self._one_by_one(found, wanted) or self._one_by_one([*found[1::-1], *found[2:]], wanted):
             return
         self.keeps_rounding = False
         left, right = _by_signal(found), _by_signal(wanted)
         for read in left.keys() | right.keys():
             if not self._same(left.get(read, []), right.get(read, [])):
                 raise NotProved(f"{signal.name} and {image.name} weigh {read.name} differently")
+
+    def _one_by_one(self, left: list[tuple[Signal, Weight]], right: list[tuple[Signal, Weight]]) -> bool:
+        """Whether the same products are added in the same order."""
+        return [read for read, _ in left] == [read for read, _ in right] and all(
+            self._same([weight], [other]) for (_, weight), (_, other) in zip(left, right, strict=True)
+        )
 
     def _mapped_terms(self, name: str) -> list[tuple[Signal, Weight]]:
         """The terms of a sum in signals of the diagram after; sums that are gone are worked in, inner ones first."""

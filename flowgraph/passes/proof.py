@@ -16,7 +16,7 @@ class Proof:
     """How a step was proved; `error_below` is k where an identity test errs with probability below 2^-k, else 0.
 
     `keeps_rounding`: in floating words, too, every signal keeps its bits, since each sum has the
-    same products in the same order.
+    same products in the same order (the first two may change places: a + b = b + a to the bit).
     """
 
     method: Literal["exact", "identity test"]

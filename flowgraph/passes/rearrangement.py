@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import NamedTuple, TypeAlias
 
-from flowgraph.diagram.elements import Signal
+from flowgraph.diagram.elements import Delay, Signal
 from flowgraph.passes.linear import UNIT, Weight
 from flowgraph.passes.naming import Names, beside
 from flowgraph.passes.network import Network, Wire
@@ -88,11 +88,11 @@ class Rearrangement:
         One line it is where a line moved, or where nothing but the next cell would read some cell.
         """
         before, _, behind = exchange.signals
-        lines = [line for node in (before, behind) for line in self._network.lines.get(node, ())]
         run_a, run_b = exchange.members_of_runs()
-        read_late = {wire.late for node, run in ((before, run_a), (behind, run_b)) for wire in self._read_by(node, run)}
+        wires = [*self._read_by(before, run_a), *self._read_by(behind, run_b)]
+        read_late = {wire.late for wire in wires}
         latest = max(read_late)
-        if any(line.length > 1 for line in lines) or not read_late.issuperset(range(1, latest)):
+        if any(self._on_line(wire.signal) for wire in wires) or not read_late.issuperset(range(1, latest)):
             own = ["w", "w_line"]
         else:
             own = ["w", *(f"w{cell}" for cell in range(1, 1 + latest))]
@@ -102,6 +102,11 @@ class Rearrangement:
 
     def _read_by(self, node: str, run: set[str]) -> list[Wire]:
         return [wire for reader, wire in self._network.readers[node] if reader in run]
+
+    def _on_line(self, signal: Signal) -> bool:
+        """Whether a signal comes from a line of several cells."""
+        element = self._network.diagram.elements.get(signal.name)
+        return isinstance(element, Delay) and element.length > 1
 
     def _take_up(self, node: str) -> None:
         """Notes what a node reads, and what the adder reads from which it was split."""

@@ -11,6 +11,7 @@ from __future__ import annotations
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Delay, Element, Input, Output, Signal, redirected, signals_read
 from flowgraph.passes.proof import NotProved, Proof
+from flowgraph.passes.wording import counted
 
 
 def prove_regions(before: Diagram, after: Diagram, regions: tuple[frozenset[str], ...]) -> Proof:
@@ -40,7 +41,7 @@ def _check_cover(before: Diagram, after: Diagram, homes: dict[str, list[int]]) -
     for diagram in (before, after):
         for name in diagram.elements:
             if before.elements.get(name) != after.elements.get(name) and len(homes.get(name, ())) != 1:
-                raise NotProved(f"{name} changed and stands in {len(homes.get(name, ()))} regions")
+                raise NotProved(f"{name} changed and stands in {counted(len(homes.get(name, ())), 'region')}")
     for name, output in before.outputs.items():
         if after.outputs[name].signal != output.signal:
             raise NotProved(f"the port {name} shows another signal")

@@ -17,8 +17,9 @@ FreshNames: TypeAlias = Callable[[int, bool], list[str]]
 class SettledLine:
     """The lines behind one node, at rest, once it is known who reads them.
 
-    `cell[late]` is the signal so many cells behind the node, `lines` what stays of the old delays
-    by name (None where one is gone), `added` the new delays in the order of the wires.
+    `cell[late]` is the signal so many cells behind the node, as far as anything that moved reads it;
+    `lines` are what stays of the old delays by name (None where one is gone), `added` the new delays
+    in the order of the wires.
     """
 
     def __init__(
@@ -31,15 +32,15 @@ class SettledLine:
         self._needed = cells_needed(network, node, still_read)
         old = network.lines.get(node, [])
         at: dict[int, list[Signal]] = {}
+        late, latest = 0, max(read_late, default=0)
         for line in old:
             before = line.signal
-            for tap in range(1, line.length + 1):
+            for tap in range(1, 1 + min(line.length, latest - network.offset[line.name])):
                 cell = Signal(line.name, tap)
                 at.setdefault(network.offset[line.name] + tap, []).append(cell)
                 self._takes_in[cell] = before
                 before = cell
-        late, latest = 0, max(read_late, default=0)
-        while late < latest or self._is_kept(at.get(late + 1, [])):
+        while late < latest:
             found = self._find(at.get(late + 1, []), self.cell[late])
             if found is None:
                 break
@@ -58,9 +59,6 @@ class SettledLine:
         for at, name in zip(range(late + 1, latest + 1), names, strict=False):
             self.added.append(Delay(name, self.cell[at - 1]))
             self.cell[at] = Signal(name, 1)
-
-    def _is_kept(self, cells: list[Signal]) -> bool:
-        return any(cell.tap <= self._needed[cell.name] for cell in cells)
 
     def _find(self, cells: list[Signal], before: Signal) -> Signal | None:
         """A cell that stays anyway; else an old one that takes in the cell before; else none."""

@@ -100,7 +100,9 @@ class Lines:
             read.update(dict.fromkeys(signals_read(element)))
             if isinstance(element, Delay):
                 read[Signal(element.name, element.length)] = None
-                read.update((Signal(element.name, tap - 1), None) for tap in self._filled.get(element.name, ()) if tap > 1)
+                read.update(
+                    (Signal(element.name, tap - 1), None) for tap in self._filled.get(element.name, ()) if tap > 1
+                )
         read.update((output.signal, None) for output in self._diagram.outputs.values())
         found: set[int] = set()
         for signal in read:

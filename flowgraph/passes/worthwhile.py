@@ -49,9 +49,7 @@ class Exchange:
 
     def members_of_runs(self) -> tuple[set[str], set[str]]:
         """All nodes of run A, and all of run B."""
-        run_a, run_b = (
-            {member for section in run for member in section.members} for run in (self.run_a, self.run_b)
-        )
+        run_a, run_b = ({member for section in run for member in section.members} for run in (self.run_a, self.run_b))
         return run_a, run_b
 
     def brings_no_cells(self) -> bool:

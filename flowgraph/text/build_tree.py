@@ -23,29 +23,30 @@ class MisplacedError(ValueError):
 
 
 class TreeBuilder(Transformer[Token, s.Node]):
-    """One method a rule or terminal; `origin` is the offset of the line in its file."""
+    """One method a rule; every terminal is a `Word` with its place in the file.
+
+    `origin` is the offset of the line that Lark itself reads.
+    """
 
     origin = 0
 
-    def NAME(self, token: Token) -> s.Word:  # noqa: N802
+    def _word(self, token: Token) -> s.Word:
         start = self.origin + (token.start_pos or 0)
         return s.Word(str(token), start, start + len(token))
 
-    def STRING(self, token: Token) -> s.Word:  # noqa: N802
-        start = self.origin + (token.start_pos or 0)
-        return s.Word(str(token[1:-1]), start, start + len(token))
+    NAME = NUMBER = UNIT = OPERATOR = SIGN = LPAR = RPAR = RSQB = FUNCTION = FOLD = COUNT = COUNTED = _word
 
-    def _end(self, token: Token) -> int:
-        return self.origin + (token.start_pos or 0) + len(token)
+    def STRING(self, token: Token) -> s.Word:  # noqa: N802
+        word = self._word(token)
+        return word._replace(text=word.text[1:-1])
 
     # Expressions
 
-    def number(self, parts: tuple[Token, Token | None]) -> s.Figure:
+    def number(self, parts: tuple[s.Word, s.Word | None]) -> s.Figure:
         figure, unit = parts
-        start = self.origin + (figure.start_pos or 0)
         if unit is None:
-            return s.Figure(exact_number(str(figure)), "", start, start + len(figure))
-        return s.Figure(exact_number(str(figure), str(unit)), str(unit), start, self._end(unit))
+            return s.Figure(exact_number(figure.text), "", figure.start, figure.end)
+        return s.Figure(exact_number(figure.text, unit.text), unit.text, figure.start, unit.end)
 
     def reference(self, parts: list[s.Word | s.At]) -> s.Reference:
         name = parts[0]
@@ -55,38 +56,35 @@ class TreeBuilder(Transformer[Token, s.Node]):
         inner = tuple(part.text if isinstance(part, s.Word) else part for part in parts[1:])
         return s.Reference(name.text, inner, name.start, parts[-1].end)
 
-    def index(self, parts: tuple[s.Expr, Token]) -> s.At:
-        return s.At(parts[0], self._end(parts[1]))
+    def index(self, parts: tuple[s.Expr, s.Word]) -> s.At:
+        return s.At(parts[0], parts[1].end)
 
-    def chain(self, parts: list[Token | s.Expr]) -> s.Expr:
+    def chain(self, parts: list[s.Word | s.Expr]) -> s.Expr:
         """A run of factors and operators: products are grouped first, then added."""
         terms: list[s.Signed] = []
         factors: list[s.Factor] = []
         negative = signed = divides = False
         for part in parts:
-            mark = part.value if isinstance(part, Token) else ""
-            if not isinstance(part, Token):
+            if not isinstance(part, s.Word):
                 factors.append(s.Factor(divides, part))
-            elif mark == "*":
+            elif part.text == "*":
                 divides = False
-            elif mark == "/":
+            elif part.text == "/":
                 divides = True
             else:
                 if factors:
                     terms.append(s.Signed(negative, _group(factors)))
                     factors = []
                 divides = False
-                negative = mark == "-"
+                negative = part.text == "-"
                 signed = True
         last = _group(factors)
         if not signed:
             return last
         terms.append(s.Signed(negative, last))
-        first = parts[0]
-        start = self.origin + (first.start_pos or 0) if isinstance(first, Token) else first.start
-        return s.Total(tuple(terms), start, last.end)
+        return s.Total(tuple(terms), parts[0].start, last.end)
 
-    def power(self, parts: tuple[s.Expr, Token | None, s.Expr]) -> s.Raised:
+    def power(self, parts: tuple[s.Expr, s.Word | None, s.Expr]) -> s.Raised:
         base, sign, exponent = parts
         height = max(_height(base), _height(exponent) + 1)
         if height > LEVELS:
@@ -94,22 +92,21 @@ class TreeBuilder(Transformer[Token, s.Node]):
                 "too-deep", f"more than {LEVELS} powers on top of each other", "", base.start, exponent.end
             )
         if sign is not None:
-            start = self.origin + (sign.start_pos or 0)
-            exponent = s.Total((s.Signed(sign.value == "-", exponent),), start, exponent.end)
+            exponent = s.Total((s.Signed(sign.text == "-", exponent),), sign.start, exponent.end)
         return s.Raised(base, exponent, height, base.start, exponent.end)
 
-    def bracket(self, parts: tuple[Token, s.Expr, Token]) -> s.Bracket:
-        return s.Bracket(parts[1], self.origin + (parts[0].start_pos or 0), self._end(parts[2]))
+    def bracket(self, parts: tuple[s.Word, s.Expr, s.Word]) -> s.Bracket:
+        return s.Bracket(parts[1], parts[0].start, parts[2].end)
 
-    def call(self, parts: tuple[Token, s.Expr, Token]) -> s.Call:
-        return s.Call(str(parts[0]), parts[1], self.origin + (parts[0].start_pos or 0), self._end(parts[2]))
+    def call(self, parts: tuple[s.Word, s.Expr, s.Word]) -> s.Call:
+        return s.Call(parts[0].text, parts[1], parts[0].start, parts[2].end)
 
-    def fold(self, parts: tuple[Token, s.Word, s.Expr, s.Expr, s.Expr, Token]) -> s.Fold:
+    def fold(self, parts: tuple[s.Word, s.Word, s.Expr, s.Expr, s.Expr, s.Word]) -> s.Fold:
         kind, variable, first, last, body, close = parts
-        return s.Fold(str(kind), variable, first, last, body, self.origin + (kind.start_pos or 0), self._end(close))
+        return s.Fold(kind.text, variable, first, last, body, kind.start, close.end)
 
-    def count(self, parts: tuple[Token, s.Word, Token]) -> s.CountOf:
-        return s.CountOf(parts[1], self.origin + (parts[0].start_pos or 0), self._end(parts[2]))
+    def count(self, parts: tuple[s.Word, s.Word, s.Word]) -> s.CountOf:
+        return s.CountOf(parts[1], parts[0].start, parts[2].end)
 
     # Lists
 
@@ -125,11 +122,12 @@ class TreeBuilder(Transformer[Token, s.Node]):
     def histories(self, parts: list[s.Reference | s.Expr]) -> tuple[tuple[s.Reference, s.Expr], ...]:
         return tuple(zip(parts[0::2], parts[1::2], strict=True))  # type: ignore[arg-type]
 
-    def response(self, parts: tuple[s.Reference, Token, s.Reference]) -> Response:
+    def response(self, parts: tuple[s.Reference, s.Word, s.Reference]) -> Response:
         output, mark, input_ = parts
-        if mark.value != "/":
-            at = self.origin + (mark.start_pos or 0)
-            raise MisplacedError("syntax", f"{mark.value} cannot stand here", "write output / input", at, at + 1)
+        if mark.text != "/":
+            raise MisplacedError(
+                "syntax", f"{mark.text} cannot stand here", "write output / input", mark.start, mark.end
+            )
         return output, input_
 
     def by(self, parts: tuple[s.Expr]) -> s.Expr:
@@ -267,7 +265,7 @@ class TreeBuilder(Transformer[Token, s.Node]):
         number, requirement = parts
         return requirement if number is None else requirement._replace(number=number.text)
 
-    def stable(self, parts: list[Token]) -> s.Node:
+    def stable(self, parts: list[s.Word]) -> s.Node:
         return s.StableLine("")
 
     def bounded(self, parts: tuple[Response]) -> s.Node:
@@ -277,8 +275,8 @@ class TreeBuilder(Transformer[Token, s.Node]):
         (output, input_), frequency, (lowest, highest) = parts
         return s.GainLimitLine("", output, input_, frequency, lowest, highest)
 
-    def count_limit(self, parts: tuple[Token, s.Expr]) -> s.Node:
-        return s.CountLine("", str(parts[0]), parts[1])
+    def count_limit(self, parts: tuple[s.Word, s.Expr]) -> s.Node:
+        return s.CountLine("", parts[0].text, parts[1])
 
 
 def _height(expr: s.Expr) -> int:
