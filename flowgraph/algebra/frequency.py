@@ -135,9 +135,13 @@ class ResponseAt:
             return "0 dB"
         gain = self.squared_gain(BITS[1])
         with ctx.workprec(BITS[1]):
-            if not gain.is_finite() or gain.contains(0):
-                return "zero" if gain.is_finite() else "not told"
-            return f"{round(float((gain.log() / arb(10).log() * 10).mid()), 9):.9g} dB"
+            if not gain.is_finite():
+                return "not told"
+            if not gain.contains(0):
+                return f"{round(float(_in_decibels(gain).mid()), 9):.9g} dB"
+            if self.transfer is not None and not self.transfer.numerator % _cyclotomic(self.turn):
+                return "zero"
+            return f"below {float(_in_decibels(gain.upper()).mid()):.0f} dB"
 
 
 def response_at(diagram: Diagram, output: str, source: str, turn: Fraction) -> ResponseAt:
@@ -148,6 +152,10 @@ def response_at(diagram: Diagram, output: str, source: str, turn: Fraction) -> R
         with suppress(TooLarge):
             transfer = number_transfers(numbers.diagram).transfers[(output, source)]
     return ResponseAt(diagram, output, source, turn, transfer)
+
+
+def _in_decibels(squared: arb) -> arb:
+    return squared.log() / arb(10).log() * 10
 
 
 def _cyclotomic(turn: Fraction) -> fmpq_poly:

@@ -169,3 +169,82 @@ diagram chain {
     assert load(str(written)).findings == ()
     assert [line.length for line in again.delays()] == [1, 1, 1]
     assert main(["verify", str(written)]) == 0
+
+
+COMBS = """\
+diagram combs_of_the_level_gauge {
+    input x
+    output y
+    adder s1 = x + i1
+    delay i1 = s1
+    adder s2 = s1 + i2
+    delay i2 = s2
+    adder s3 = s2 + i3
+    delay i3 = s3
+    delay c1 = s3 by 8
+    delay far = s3 by 11
+    adder k1 = s3 - c1[8]
+    delay c2 = k1 by 8
+    adder k2 = k1 - c2[8] - far[11]
+    delay c3 = k2 by 8
+    adder y = k2 - c3[8]
+    intent y / x = (1 - z^-8)*((1 - z^-8)^2 - z^-11)/(1 - z^-1)^3
+}
+"""
+
+COMBS_TOLD = """\
+combs_of_the_level_gauge  before   after
+  cells                       38      29
+  multiplies                   0       0
+  adds                         7       7
+
+1. merge_equal: merged 9 cells: i3 into far[1], c1[1 .. 8] into far[1 .. 8]
+   law    Cells with equal starting contents that take in equal signals hold
+          equal samples, and so do equal sums.
+   proof  exact; keeps every rounding
+
+cells that became one
+  i3, c1[1], far[1] -> far[1]
+  c1[2 .. 8], far[2 .. 8] -> far[2 .. 8]
+"""
+
+
+def test_tells_cells_of_lines_as_ranges(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Every cell that shares is told, neighbours of a line together; a long name widens the table."""
+    path = tmp_path / "combs.sfg"
+    path.write_text(COMBS, encoding="utf-8")
+    assert main(["reduce", str(path), "-o", str(tmp_path / "reduced.sfg")]) == 0
+    assert capsys.readouterr().out == COMBS_TOLD
+
+
+def test_long_lists_stay_within_80_columns(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """A list of many cells goes on in the next line, between names and never inside a range."""
+    lines = [f"line_number_{k}" for k in range(9)]
+    path = tmp_path / "lines.sfg"
+    total = " + ".join(f"{k + 1}*{name}[12]" for k, name in enumerate(lines))
+    drawn = [f"    delay {name} = x by 12" for name in lines]
+    text = [
+        "diagram lines {",
+        "    input x",
+        "    output y",
+        *drawn,
+        f"    adder y = {total}",
+        "    intent y / x = 45*z^-12",
+    ]
+    path.write_text("\n".join([*text, "}"]), encoding="utf-8")
+    assert main(["reduce", str(path), "-o", str(tmp_path / "reduced.sfg")]) == 0
+    told = capsys.readouterr().out.splitlines()
+    assert max(map(len, told)) <= 80
+    listed = " ".join(line.strip() for line in told[told.index("cells that became one") + 1 :])
+    assert listed == f"{', '.join(f'{name}[1 .. 12]' for name in lines)} -> line_number_0[1 .. 12]"
+    assert all(line.count("[") == line.count("]") for line in told)
+
+
+@pytest.mark.parametrize("argument", ["", ":section"], ids=["the file", "a diagram of the file"])
+def test_never_replaces_the_file_it_reads(argument: str, section: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """-o with the diagram file itself is refused, and the file stays as it is."""
+    assert main(["reduce", f"{section}{argument}", "-o", str(section)]) == 2
+    told = capsys.readouterr()
+    assert told.out == ""
+    assert told.err == f"error: {section}: this is the diagram file itself, name another output\n"
+    assert section.read_text(encoding="utf-8") == SECTION
