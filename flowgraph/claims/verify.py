@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Iterator
 from dataclasses import replace
 
 from flowgraph.claims.intents import verdict_on_intent
@@ -21,34 +22,45 @@ from flowgraph.diagram.diagram import Diagram, Use
 from flowgraph.text.instantiate import with_renamed_coefficients
 
 
-def verify_all(diagrams: list[Diagram], included: set[str]) -> list[tuple[Diagram, list[Verdict]]]:
+def verify_all(
+    diagrams: list[Diagram], included: set[str], progress: Callable[[float], None]
+) -> list[tuple[Diagram, list[Verdict]]]:
     """The verdicts on each diagram, where what needs values is judged at the uses among them.
 
     A requirement of a diagram with open coefficients is undecided only when none of the diagrams
     gives it values; diagrams that merely came along in an include (`included`) need no values.
+    `progress` is told the share of claims judged so far.
     """
     given_values = included | {
         use.diagram.name for user in diagrams if not _is_open(user) for use in _open_uses(user)
     }
     judged: list[tuple[Diagram, list[Verdict]]] = []
+    done, whole = 0, sum(len(diagram.claims) for diagram in diagrams)
     for diagram in diagrams:
         left_to_uses = _is_open(diagram) and diagram.name in given_values
         kept = [claim for claim in diagram.claims if not (left_to_uses and _needs_values(claim))]
-        judged.append((diagram, verify(replace(diagram, claims=tuple(kept)))))
+        verdicts: list[Verdict] = []
+        for verdict in _verdicts(replace(diagram, claims=tuple(kept))):
+            verdicts.append(verdict)
+            done += 1
+            progress(min(1.0, done / max(1, whole)))
+        judged.append((diagram, verdicts))
     return judged
 
 
 def verify(diagram: Diagram) -> list[Verdict]:
     """The verdicts on the claims of one diagram in the order of the file, then those at its uses."""
-    verdicts: list[Verdict] = []
+    return list(_verdicts(diagram))
+
+
+def _verdicts(diagram: Diagram) -> Iterator[Verdict]:
     for claim in diagram.claims:
         match claim:
             case EquationIntent() | RatioIntent() | DiagramIntent():
-                verdicts.append(verdict_on_intent(claim, diagram))
+                yield verdict_on_intent(claim, diagram)
             case StableRequirement() | BoundedRequirement() | GainRequirement() | CountRequirement():
-                verdicts.append(verdict_on_requirement(claim, diagram))
-    verdicts.extend(_at_uses(diagram))
-    return verdicts
+                yield verdict_on_requirement(claim, diagram)
+    yield from _at_uses(diagram)
 
 
 def _needs_values(claim: Claim) -> bool:

@@ -33,7 +33,7 @@ def execute(options: argparse.Namespace) -> int:
 
     diagram = one_diagram(options)
     if options.output is not None:
-        refuse_overwriting(options.files, options.output)
+        refuse_overwriting([*options.files, *_files_of(diagram)], options.output)
     try:
         reduction = reduce_diagram(diagram)
     except Undefined as undefined:
@@ -54,6 +54,20 @@ def execute(options: argparse.Namespace) -> int:
         print()
         print(text, end="")
     return 0
+
+
+def _files_of(diagram: Diagram) -> list[str]:
+    """The files that the diagram and all it uses come from."""
+    files: dict[str, None] = {}
+    seen: set[str] = set()
+    waiting = [diagram]
+    while waiting:
+        drawn = waiting.pop()
+        if drawn.name not in seen:
+            seen.add(drawn.name)
+            files[drawn.span.file] = None
+            waiting.extend(use.diagram for use in drawn.uses)
+    return list(files)
 
 
 def _told(reduction: Reduction, *, steps: bool) -> list[str]:

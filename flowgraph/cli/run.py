@@ -5,11 +5,10 @@ from __future__ import annotations
 import argparse
 import json
 import sys
-from collections.abc import Callable
-from time import monotonic
 from typing import TYPE_CHECKING
 
 from flowgraph.cli.files import add_file_argument, one_diagram, refuse, refuse_overwriting, tell
+from flowgraph.cli.progress import progress_bar
 
 if TYPE_CHECKING:
     from flowgraph.run.run_recording import Ran
@@ -65,20 +64,3 @@ def _told(ran: Ran) -> dict[str, object]:
         "file": ran.file,
         "not_finite": [{"output": name, "sample": sample} for name, sample in ran.not_finite],
     }
-
-
-def progress_bar(label: str) -> Callable[[float], None]:
-    """A bar on standard error, on a terminal only and for work that takes longer than a second."""
-    began = monotonic()
-    shown = False
-
-    def show(share: float) -> None:
-        nonlocal shown
-        if not sys.stderr.isatty() or (monotonic() - began < 1.0 and not shown):
-            return
-        shown = share < 1.0
-        bar = "#" * round(40 * share)
-        sys.stderr.write(f"\r{label[:24]} [{bar:<40}] {share:4.0%}" if shown else "\r" + " " * 80 + "\r")
-        sys.stderr.flush()
-
-    return show

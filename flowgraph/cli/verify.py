@@ -11,6 +11,7 @@ from flowgraph.claims.verdict import Counterexample, Verdict
 from flowgraph.claims.verify import verify_all
 from flowgraph.claims.wording import claim_text
 from flowgraph.cli.files import add_file_arguments, choose
+from flowgraph.cli.progress import progress_bar
 from flowgraph.diagram.diagram import Diagram
 
 HELP = "each claim proved, refuted or undecided"
@@ -24,7 +25,7 @@ def configure(parser: argparse.ArgumentParser) -> None:
 def execute(options: argparse.Namespace) -> int:
     """Prints the verdicts: 0 when all are proved, 1 with a refutation, 3 with something undecided."""
     chosen = choose(options, "claims", every=True)
-    judged = verify_all(chosen.diagrams, chosen.included)
+    judged = verify_all(chosen.diagrams, chosen.included, progress_bar("verify"))
     if options.json:
         told = {"diagrams": [_told(diagram, verdicts) for diagram, verdicts in judged]}
         print(json.dumps(told, indent=2, ensure_ascii=False))

@@ -211,7 +211,7 @@ def test_requirements_of_an_open_diagram_are_judged_at_each_use() -> None:
             intent y / x = 1/((1 - 0.5*z^-1)*(1 - 1.5*z^-1))
         }"""
     diagrams = read_diagrams(text)
-    together = verify_all([diagrams["section"], diagrams["user"]], set())
+    together = verify_all([diagrams["section"], diagrams["user"]], set(), lambda _: None)
     assert [verdict.outcome for verdict in together[0][1]] == ["proved"]
     assert [verdict.outcome for verdict in verify(diagrams["section"])] == ["proved", "undecided"]
     verdicts = verify(diagrams["user"])

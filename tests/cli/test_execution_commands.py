@@ -8,7 +8,7 @@ from pathlib import Path
 import pytest
 
 from flowgraph.cli.main import main
-from flowgraph.cli.run import progress_bar
+from flowgraph.cli.progress import progress_bar
 
 LEAKY = """\
 diagram leaky_level {
@@ -142,7 +142,7 @@ def test_progress_is_shown_on_a_terminal_after_a_second_only(
 ) -> None:
     """Short work and pipes see nothing; the bar is wiped away at the end."""
     clock = iter([0.0, 0.5, 1.5, 2.0])
-    monkeypatch.setattr("flowgraph.cli.run.monotonic", lambda: next(clock))
+    monkeypatch.setattr("flowgraph.cli.progress.monotonic", lambda: next(clock))
     show = progress_bar("in.csv")
     show(0.1)
     monkeypatch.setattr("sys.stderr.isatty", lambda: True)
