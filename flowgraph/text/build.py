@@ -8,8 +8,9 @@ from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Signal, Term
 from flowgraph.diagram.expression import Expression
 from flowgraph.source.diagnostic import Note
 from flowgraph.text import syntax as s
+from flowgraph.text.coefficient import coefficient
 from flowgraph.text.instances import Instance
-from flowgraph.text.meaning import coefficient, full_name, minus, steps
+from flowgraph.text.meaning import full_name, minus, steps
 from flowgraph.text.refuse_term import refuse, signals_inside
 from flowgraph.text.scope import Env, Fault, Scope
 from flowgraph.text.signals import is_signal, signal

@@ -8,6 +8,7 @@ from lark import Token, Transformer
 
 from flowgraph.text import syntax as s
 from flowgraph.text.exact import LEVELS, exact_number
+from flowgraph.text.written import height
 
 Limits: TypeAlias = tuple[s.Expr | None, s.Expr | None]
 Response: TypeAlias = tuple[s.Reference, s.Reference]
@@ -86,14 +87,14 @@ class TreeBuilder(Transformer[Token, s.Node]):
 
     def power(self, parts: tuple[s.Expr, s.Word | None, s.Expr]) -> s.Raised:
         base, sign, exponent = parts
-        height = max(_height(base), _height(exponent) + 1)
-        if height > LEVELS:
+        levels = max(height(base), height(exponent) + 1)
+        if levels > LEVELS:
             raise MisplacedError(
                 "too-deep", f"more than {LEVELS} powers on top of each other", "", base.start, exponent.end
             )
         if sign is not None:
             exponent = s.Total((s.Signed(sign.text == "-", exponent),), sign.start, exponent.end)
-        return s.Raised(base, exponent, height, base.start, exponent.end)
+        return s.Raised(base, exponent, levels, base.start, exponent.end)
 
     def bracket(self, parts: tuple[s.Word, s.Expr, s.Word]) -> s.Bracket:
         return s.Bracket(parts[1], parts[0].start, parts[2].end)
@@ -277,25 +278,6 @@ class TreeBuilder(Transformer[Token, s.Node]):
 
     def count_limit(self, parts: tuple[s.Word, s.Expr]) -> s.Node:
         return s.CountLine("", parts[0].text, parts[1])
-
-
-def _height(expr: s.Expr) -> int:
-    """How many powers stand on top of each other in an expression; each power knows it of itself."""
-    match expr:
-        case s.Raised():
-            return expr.height
-        case s.Total(terms):
-            return max(_height(body) for _, body in terms)
-        case s.Scaled(factors):
-            return max(_height(body) for _, body in factors)
-        case s.Bracket(inner) | s.Call(_, inner):
-            return _height(inner)
-        case s.Fold(_, _, first, last, body):
-            return max(_height(first), _height(last), _height(body))
-        case s.Reference(_, parts):
-            return max((_height(part.place) for part in parts if isinstance(part, s.At)), default=0)
-        case s.Figure() | s.CountOf():
-            return 0
 
 
 def _group(factors: list[s.Factor]) -> s.Expr:

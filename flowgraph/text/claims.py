@@ -2,32 +2,27 @@
 
 from __future__ import annotations
 
-from fractions import Fraction
-from typing import cast
-
 from flowgraph.diagram.claim import (
-    BoundedRequirement,
     Claim,
-    CountRequirement,
     DiagramIntent,
     EquationIntent,
-    GainRequirement,
     RatioIntent,
-    StableRequirement,
 )
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Input
 from flowgraph.diagram.expression import Expression, Name, Sample, names_in
 from flowgraph.source.span import Span
 from flowgraph.text import syntax as s
-from flowgraph.text.exact import DECIBELS
+from flowgraph.text.coefficient import coefficient_leaf
 from flowgraph.text.instances import Instance
 from flowgraph.text.instantiate import in_terms_of_user
 from flowgraph.text.linear import check_linear
-from flowgraph.text.meaning import checked, coefficient_leaf, expression, fixed, full_name, whole
+from flowgraph.text.meaning import checked, expression, full_name, whole
 from flowgraph.text.place import arguments, given
+from flowgraph.text.ports import input_port, output_port
 from flowgraph.text.program import Program
 from flowgraph.text.reach import earliest_samples, reach_of_ratio, within_reach
+from flowgraph.text.requirement import requirement
 from flowgraph.text.scope import Env, Scope
 
 
@@ -44,52 +39,12 @@ def claim(scope: Scope, program: Program, diagram: Diagram, line: Instance, read
             within_reach(scope, reach_of_ratio(found), ratio)
             samples = 0 if late is None else whole(scope, late, env, "a number of samples")
             within_reach(scope, samples, late or ratio)
-            return RatioIntent(_output(scope, output, env), _input(scope, diagram, input_, env), found, samples, span)
+            return RatioIntent(
+                output_port(scope, output, env), input_port(scope, diagram, input_, env), found, samples, span
+            )
         case s.SameAsLine(output, applied):
-            return _same_as(scope, program, diagram, _output(scope, output, env), applied, line, reads)
-        case s.StableLine(number):
-            return StableRequirement(number, span)
-        case s.BoundedLine(number, output, input_):
-            return BoundedRequirement(_output(scope, output, env), _input(scope, diagram, input_, env), number, span)
-        case s.GainLimitLine():
-            return _gain(scope, diagram, line.node, env, span)
-        case s.CountLine(number, counted, highest):
-            limit = whole(scope, highest, env, "a count")
-            return CountRequirement("cells" if counted == "cells" else "multiplies", limit, number, span)
-    raise scope.silent()
-
-
-def _output(scope: Scope, reference: s.Reference, env: Env) -> str:
-    """The full name of an output port. Raises Fault."""
-    name = full_name(scope, reference, env)
-    if name not in scope.ports:
-        if name in scope.broken or reference.name in scope.broken:
-            raise scope.silent()
-        raise scope.fault(
-            "not-output",
-            f"{name} is no output of this diagram",
-            reference.start,
-            reference.end,
-            f"the outputs are {', '.join(scope.ports)}" if scope.ports else "add an output line",
-        )
-    return name
-
-
-def _input(scope: Scope, diagram: Diagram, reference: s.Reference, env: Env) -> str:
-    """The full name of an input port. Raises Fault."""
-    name = full_name(scope, reference, env)
-    if not isinstance(diagram.elements.get(name), Input):
-        if name in scope.broken or reference.name in scope.broken:
-            raise scope.silent()
-        inputs = [port.name for port in diagram.inputs()]
-        raise scope.fault(
-            "not-input",
-            f"{name} is no input of this diagram",
-            reference.start,
-            reference.end,
-            f"the inputs are {', '.join(inputs)}" if inputs else "add an input line",
-        )
-    return name
+            return _same_as(scope, program, diagram, output_port(scope, output, env), applied, line, reads)
+    return requirement(scope, diagram, line)
 
 
 def _ratio_leaf(scope: Scope, reference: s.Reference, env: Env) -> Expression:
@@ -159,7 +114,7 @@ def _equation(
             f"write intent {name}[n] = .., or intent {name} / input = ..",
         )
     base = s.Reference(left.name, left.parts[:-1], left.start, left.end)
-    output = _output(scope, base, env)
+    output = output_port(scope, base, env)
 
     if _bare_n(node.right):
         raise scope.fault("not-yet", "`a closed form in n` is not known here yet", node.right.start, node.right.end)
@@ -268,48 +223,10 @@ def _same_as(
         )
     values = given(scope, other, applied, 0, line.env)
     fed = arguments(scope, other, applied)
-    inputs = tuple((port, _input(scope, diagram, reference, line.env)) for port, reference in fed.items())
+    inputs = tuple((port, input_port(scope, diagram, reference, line.env)) for port, reference in fed.items())
     for value in values.values():
         reads |= names_in(value)
     scope.grow(made.size, line.start, line.end)
     renamed = in_terms_of_user(other, values, diagram.coefficients)
     span = scope.span(line.start, line.end)
     return DiagramIntent(output, renamed, inputs, tuple(values.items()), span)
-
-
-def _gain(scope: Scope, diagram: Diagram, node: s.GainLimitLine, env: Env, span: Span) -> GainRequirement:
-    """`gain y / x at F within A .. B dB`. Raises Fault."""
-    output, input_ = _output(scope, node.output, env), _input(scope, diagram, node.input, env)
-    at = node.frequency
-    frequency, seconds = fixed(scope, at, env)
-    if scope.rate is None:
-        scope.used_rate = True
-        raise scope.fault(
-            "rate-missing", "a frequency needs a rate", at.start, at.end, "add a line such as: rate 48 kHz"
-        )
-    if seconds != -1:
-        raise scope.fault(
-            "units", "a gain is asked for at a frequency", at.start, at.end, "write the unit, such as 1 kHz"
-        )
-    if not 0 <= frequency <= scope.rate / 2:
-        raise scope.fault(
-            "frequency", f"a frequency lies between 0 Hz and half the rate, {scope.rate / 2} Hz", at.start, at.end
-        )
-    lowest, highest = (_decibels(scope, limit, env) for limit in (node.lowest, node.highest))
-    if lowest is not None and highest is not None and lowest > highest:
-        limit = cast(s.Expr, node.lowest)
-        raise scope.fault(
-            "range", "this range ends before it begins", limit.start, limit.end, "write the lower end first"
-        )
-    return GainRequirement(output, input_, frequency, lowest, highest, node.number, span)
-
-
-def _decibels(scope: Scope, limit: s.Expr | None, env: Env) -> Fraction | None:
-    if limit is None:
-        return None
-    value, seconds = fixed(scope, limit, env)
-    if seconds:
-        raise scope.fault("units", "a limit is a number of dB", limit.start, limit.end)
-    if abs(value) > DECIBELS:
-        raise scope.fault("too-large", f"a limit beyond {DECIBELS} dB", limit.start, limit.end)
-    return value

@@ -10,9 +10,10 @@ from flowgraph.diagram.index import strong_components
 from flowgraph.source.diagnostic import Diagnostic
 from flowgraph.source.span import Span
 from flowgraph.text import syntax as s
+from flowgraph.text.coefficient import coefficient
 from flowgraph.text.exact import BITS, TooLargeError
 from flowgraph.text.instances import Instance
-from flowgraph.text.meaning import coefficient, fixed, full_name
+from flowgraph.text.meaning import fixed, full_name
 from flowgraph.text.number_file import read_numbers
 from flowgraph.text.quantities import InexactError, UnequalPowersError, seconds_of, value_of
 from flowgraph.text.scope import Env, Fault, Scope

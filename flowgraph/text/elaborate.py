@@ -26,7 +26,8 @@ from flowgraph.text.coefs import (
 from flowgraph.text.define import Definer
 from flowgraph.text.instances import Instance, instances, leave_out
 from flowgraph.text.instantiate import coefficients_under, elements_under
-from flowgraph.text.meaning import full_name, undefined
+from flowgraph.text.meaning import full_name
+from flowgraph.text.names import undefined
 from flowgraph.text.place import given
 from flowgraph.text.program import Elaborated, Program
 from flowgraph.text.rules import judge
@@ -80,7 +81,7 @@ class _Elaboration:
             scope.tell(fault.finding)
             return Elaborated(None, False, scope.size, scope.levels, tuple(scope.findings))
         lines = self._each(lines, self._name)
-        lines = self._each(lines, lambda line: value_coefs(scope, line, files))
+        self._each([line for line in lines if is_coef(line.node)], lambda line: value_coefs(scope, line, files))
         check_coefs(scope)
         self._each([line for line in lines if not is_claim(line.node)], self._build)
         self.coefficients = {**scope.coefs, **self.coefficients}
@@ -221,6 +222,11 @@ class _Elaboration:
 
 
 CLAIMS = frozenset(get_args(s.ClaimNode))
+
+
+def is_coef(node: s.Node) -> bool:
+    """Whether a line gives coefficients their values."""
+    return isinstance(node, s.Coef | s.CoefList | s.CoefFile)
 
 
 def is_claim(node: s.Node) -> bool:

@@ -15,7 +15,6 @@ from flowgraph.diagram.expression import (
     Name,
     Negative,
     Number,
-    Pi,
     Power,
     Product,
     Quotient,
@@ -23,9 +22,10 @@ from flowgraph.diagram.expression import (
 )
 from flowgraph.text import syntax as s
 from flowgraph.text.exact import BITS, ELEMENTS, TERMS, TooLargeError
+from flowgraph.text.names import refuse_label
 from flowgraph.text.quantities import InexactError, UnequalPowersError, as_expression, plain_value, seconds_of, value_of
 from flowgraph.text.scope import Env, Fault, Fixed, Scope
-from flowgraph.text.words import names_in_text, nearest
+from flowgraph.text.words import nearest
 
 Leaf: TypeAlias = Callable[[Scope, s.Reference, Env], Expression]
 """What a name in an expression stands for."""
@@ -89,20 +89,6 @@ def full_name(scope: Scope, reference: s.Reference, env: Env) -> str:
     for part in reference.parts:
         name += f".{part}" if isinstance(part, str) else f"[{index(scope, part, env)}]"
     return name
-
-
-def coefficient(scope: Scope, expr: s.Expr, env: Env) -> Expression:
-    """A coefficient expression; its powers of seconds fit together. Raises Fault.
-
-    One that reads no repeat variable is made once, however often its line is repeated.
-    """
-    key = (expr.start, expr.end)
-    found = scope.steady.get(key)
-    if found is None:
-        found = checked(scope, expression(scope, expr, env, coefficient_leaf), expr)
-        if not env or env.keys().isdisjoint(names_in_text(scope.source.text[expr.start : expr.end])):
-            scope.steady[key] = found
-    return found
 
 
 def checked(scope: Scope, found: Expression, expr: s.Expr) -> Expression:
@@ -251,7 +237,7 @@ def _raised(scope: Scope, expr: s.Raised, env: Env, leaf: Leaf) -> Expression:
 
 def const_leaf(scope: Scope, reference: s.Reference, env: Env) -> Expression:
     """Names in const expressions: consts, repeat variables, rate and half."""
-    found = _known_number(scope, reference, env)
+    found = known_number(scope, reference, env)
     if found is not None:
         return found
     refuse_label(scope, reference, env)
@@ -270,57 +256,7 @@ def const_leaf(scope: Scope, reference: s.Reference, env: Env) -> Expression:
     )
 
 
-def coefficient_leaf(scope: Scope, reference: s.Reference, env: Env) -> Expression:
-    """Names in coefficient expressions: coefs, consts, repeat variables, rate, half and pi."""
-    found = _known_number(scope, reference, env)
-    if found is not None:
-        return found
-    refuse_label(scope, reference, env)
-    name = full_name(scope, reference, env)
-    if name in scope.coefs:
-        return Name(name)
-    if name == "pi":
-        return Pi()
-    if name in scope.broken or reference.name in scope.broken:
-        raise scope.silent()
-    if name in scope.arrays:
-        raise scope.fault(
-            "array-bare",
-            f"{name} is an array",
-            reference.start,
-            reference.end,
-            f"read an entry: {name}[0] .. {name}[{scope.arrays[name] - 1}]",
-        )
-    if name in scope.signals or name in scope.aliases or name in scope.lines:
-        raise scope.fault(
-            "signal-as-coef", f"{name} is a signal, and here a coefficient is expected", reference.start, reference.end
-        )
-    if reference.name in scope.arrays:
-        raise scope.fault(
-            "index-range",
-            f"{name} is not there: {reference.name} has the entries 0 .. {scope.arrays[reference.name] - 1}",
-            reference.start,
-            reference.end,
-        )
-    raise undefined(scope, name, reference)
-
-
-def refuse_label(scope: Scope, reference: s.Reference, env: Env) -> None:
-    """Raises Fault where the name is a label of the repeats around it: it only stands in brackets."""
-    label = env.get(reference.name)
-    if not isinstance(label, str):
-        return
-    family = next((name.removesuffix(f"[{label}]") for name in scope.defined if name.endswith(f"[{label}]")), "NAME")
-    raise scope.fault(
-        "label-alone",
-        f"{reference.name} is a label of this repeat, and no signal or number",
-        reference.start,
-        reference.end,
-        f"write the name it belongs to in front, such as {family}[{reference.name}]",
-    )
-
-
-def _known_number(scope: Scope, reference: s.Reference, env: Env) -> Expression | None:
+def known_number(scope: Scope, reference: s.Reference, env: Env) -> Expression | None:
     """A repeat variable, rate, half or const; None for every other name."""
     if reference.parts:
         return None
@@ -344,11 +280,3 @@ def _known_number(scope: Scope, reference: s.Reference, env: Env) -> Expression 
             "add a line such as: rate 48 kHz",
         )
     return Number(scope.rate if name == "rate" else scope.rate / 2, "Hz")
-
-
-def undefined(scope: Scope, name: str, at: s.Reference | s.Word) -> Fault:
-    """The finding for a name nothing defines, with the defined name it looks most like."""
-    known = list(dict.fromkeys([*scope.kinds, *scope.defined]))
-    close = nearest(name, known)
-    mend = f"did you mean {close}?" if close else "define it, or correct the name"
-    return scope.fault("undefined", f"{name[:80]} is not defined", at.start, at.end, mend)

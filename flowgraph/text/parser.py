@@ -43,14 +43,14 @@ class LineParser:
             transformer=self._builder,
             maybe_placeholders=True,
         )
-        self._table = LineTable(self._lark)
+        self.table = LineTable(self._lark)
 
     def parse(self, text: str, start: int, end: int) -> Node:
         """The node for the characters `start` .. `end` of `text`.
 
         Raises lark.UnexpectedInput (its offsets count from `start`), TooLargeError or MisplacedError.
         """
-        node = self._table.parse(text, start, end)
+        node = self.table.parse(text, start, end)
         return self.parse_with_lark(text, start, end) if node is None else node
 
     def parse_with_lark(self, text: str, start: int, end: int) -> Node:

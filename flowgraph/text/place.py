@@ -9,8 +9,9 @@ from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Signal
 from flowgraph.diagram.expression import Expression, Name, names_in
 from flowgraph.text import syntax as s
+from flowgraph.text.coefficient import coefficient
 from flowgraph.text.instances import Instance
-from flowgraph.text.meaning import array_length, coefficient, full_name
+from flowgraph.text.meaning import array_length, full_name
 from flowgraph.text.program import Program
 from flowgraph.text.scope import Alias, Env, Fault, Scope
 from flowgraph.text.words import nearest

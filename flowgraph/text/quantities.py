@@ -17,8 +17,12 @@ from flowgraph.diagram.expression import (
     Quotient,
     Sample,
     Sum,
+    children,
 )
 from flowgraph.text.exact import SECONDS, TooLargeError, exact_power, within_bits
+
+FEW = 1000
+"""The most parts of an expression whose value is found beside that of its line."""
 
 
 class UnequalPowersError(ValueError):
@@ -57,7 +61,16 @@ def value_of(expression: Expression, known: Mapping[str, Fraction]) -> Fraction:
 
 
 def plain_value(expression: Expression) -> Fraction | None:
-    """The exact value of an expression made of numbers alone; None for every other."""
+    """The exact value of an expression made of a few numbers alone; None for every other.
+
+    Divisors within divisors are each looked at, so what is long is left to the look at the whole line.
+    """
+    waiting, parts = [expression], 0
+    while waiting:
+        parts += 1
+        if parts > FEW:
+            return None
+        waiting.extend(children(waiting.pop()))
     try:
         return value_of(expression, {})
     except (InexactError, TooLargeError, ZeroDivisionError):

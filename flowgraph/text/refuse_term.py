@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from flowgraph.text import syntax as s
-from flowgraph.text.meaning import full_name, refuse_label, undefined
+from flowgraph.text.meaning import full_name
+from flowgraph.text.names import refuse_label, undefined
 from flowgraph.text.scope import Env, Fault, Scope
 from flowgraph.text.signals import is_signal
 

@@ -5,7 +5,8 @@ from __future__ import annotations
 from flowgraph.diagram.elements import Signal
 from flowgraph.source.diagnostic import Note
 from flowgraph.text import syntax as s
-from flowgraph.text.meaning import index, refuse_label, undefined, whole
+from flowgraph.text.meaning import index, whole
+from flowgraph.text.names import refuse_label, undefined
 from flowgraph.text.scope import Env, Fault, Scope
 
 

@@ -2,123 +2,51 @@
 
 from __future__ import annotations
 
-from fractions import Fraction
 from typing import Literal, NamedTuple, TypeAlias
 
 from flowgraph.source.span import Source
-
-
-class Word(NamedTuple):
-    """A name or a quoted text as it stands in the file; quotes are taken off."""
-
-    text: str
-    start: int
-    end: int
-
-
-class Figure(NamedTuple):
-    """A number with the unit written behind it, in base units."""
-
-    value: Fraction
-    unit: str
-    start: int
-    end: int
-
-
-class At(NamedTuple):
-    """`[place]` behind a name; `end` is the offset after its bracket."""
-
-    place: Expr
-    end: int
-
-
-class Reference(NamedTuple):
-    """`f`, `f[m]`, `low.w1`, `y[0].w1`: a name, then indices and inner names (plain strings)."""
-
-    name: str
-    parts: tuple[At | str, ...]
-    start: int
-    end: int
-
-
-class Signed(NamedTuple):
-    """One term of a sum."""
-
-    negative: bool
-    body: Expr
-
-
-class Total(NamedTuple):
-    """Terms with signs; a single term without a sign is no Total."""
-
-    terms: tuple[Signed, ...]
-    start: int
-    end: int
-
-
-class Factor(NamedTuple):
-    """One factor of a term, multiplied or divided by."""
-
-    divides: bool
-    body: Expr
-
-
-class Scaled(NamedTuple):
-    """Two or more factors."""
-
-    factors: tuple[Factor, ...]
-    start: int
-    end: int
-
-
-class Raised(NamedTuple):
-    """`base ^ exponent`; `height` counts how many powers stand on top of each other."""
-
-    base: Expr
-    exponent: Expr
-    height: int
-    start: int
-    end: int
-
-
-class Bracket(NamedTuple):
-    """`( inner )`."""
-
-    inner: Expr
-    start: int
-    end: int
-
-
-class Call(NamedTuple):
-    """sqrt, sin, cos, tan or exp."""
-
-    function: str
-    inner: Expr
-    start: int
-    end: int
-
-
-class Fold(NamedTuple):
-    """`total(k = A .. B, body)` or `product(k = A .. B, body)`."""
-
-    kind: str
-    variable: Word
-    first: Expr
-    last: Expr
-    body: Expr
-    start: int
-    end: int
-
-
-class CountOf(NamedTuple):
-    """`count(h)`."""
-
-    array: Word
-    start: int
-    end: int
-
-
-Expr: TypeAlias = Figure | Reference | Total | Scaled | Raised | Bracket | Call | Fold | CountOf
+from flowgraph.text.written import (
+    At as At,
+)
+from flowgraph.text.written import (
+    Bracket as Bracket,
+)
+from flowgraph.text.written import (
+    Call as Call,
+)
+from flowgraph.text.written import (
+    CountOf as CountOf,
+)
+from flowgraph.text.written import (
+    Expr as Expr,
+)
+from flowgraph.text.written import (
+    Factor as Factor,
+)
+from flowgraph.text.written import (
+    Figure as Figure,
+)
+from flowgraph.text.written import (
+    Fold as Fold,
+)
+from flowgraph.text.written import (
+    Raised as Raised,
+)
+from flowgraph.text.written import (
+    Reference as Reference,
+)
+from flowgraph.text.written import (
+    Scaled as Scaled,
+)
+from flowgraph.text.written import (
+    Signed as Signed,
+)
+from flowgraph.text.written import (
+    Total as Total,
+)
+from flowgraph.text.written import (
+    Word as Word,
+)
 
 
 class DiagramHead(NamedTuple):

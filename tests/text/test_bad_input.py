@@ -81,6 +81,7 @@ HOSTILE = {
     ),
     "diagrams used 100 deep": (chain(100), "diagrams used more than 64 deep"),
     "diagrams that double 40 times": (doubling(40), "the diagram grows beyond 2000000 elements and cells here"),
+    "blanks without end": (level("gain g = 2" + " " * 200_000 + "x"), "x follows a number without an operator"),
     "a zero byte": ("diagram a\0 {", "this is no text file in UTF-8"),
 }
 
