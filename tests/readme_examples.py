@@ -1,6 +1,6 @@
 """The examples of README.md, run again: every shown file and every shown output must be what is there.
 
-    python tests/readme_examples.py        writes today's output into README.md
+python tests/readme_examples.py        writes today's output into README.md
 """
 
 from __future__ import annotations

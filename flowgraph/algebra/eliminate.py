@@ -154,7 +154,6 @@ def _solve_without_fractions(
     return last, values
 
 
-
 def _rescale(entries: dict[K, R], last: R, scaled_by: R, ring: Ring[R]) -> None:
     if last != scaled_by:
         for key, value in list(entries.items()):

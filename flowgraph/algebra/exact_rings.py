@@ -179,6 +179,4 @@ def exact_ring(coefficients: Mapping[str, Coefficient], expressions: list[Expres
         if len(symbols) > SYMBOL_LIMIT:
             raise TooLarge
     # The two rings have their own element types; the callers never mix elements of different rings.
-    return cast(
-        ExactRing[Polynomial], SymbolPolynomials(value, expressions) if symbols else NumberPolynomials(value)
-    )
+    return cast(ExactRing[Polynomial], SymbolPolynomials(value, expressions) if symbols else NumberPolynomials(value))

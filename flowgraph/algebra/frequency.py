@@ -122,9 +122,9 @@ class ResponseAt:
         limit = Fraction(10) ** int(decibels / 10)
         upper, lower = self.transfer.numerator, self.transfer.denominator
         degree = max(upper.degree(), lower.degree(), 0)
-        difference = upper * _reversed(upper, degree) - fmpq(
-            limit.numerator, limit.denominator
-        ) * lower * _reversed(lower, degree)
+        difference = upper * _reversed(upper, degree) - fmpq(limit.numerator, limit.denominator) * lower * _reversed(
+            lower, degree
+        )
         return not (difference % _cyclotomic(self.turn))
 
     def decibels(self) -> str:

@@ -195,9 +195,7 @@ def _kernel_within(matrix: nmod_mat, space: nmod_mat) -> nmod_mat:
 
 def _support(space: nmod_mat) -> set[int]:
     """The places at which some vector of the space is not zero."""
-    return {
-        row for row in range(space.nrows()) if any(int(space[row, column]) != 0 for column in range(space.ncols()))
-    }
+    return {row for row in range(space.nrows()) if any(int(space[row, column]) != 0 for column in range(space.ncols()))}
 
 
 def is_semisimple(diagram: Diagram, factor: fmpz_poly, seed: str) -> bool:

@@ -35,9 +35,7 @@ def numbered(diagram: Diagram) -> Numbered:
         if expression not in known:
             rational = values.is_rational(expression)
             exact = exact and rational
-            known[expression] = Number(
-                values.fraction(expression) if rational else Fraction(values.double(expression))
-            )
+            known[expression] = Number(values.fraction(expression) if rational else Fraction(values.double(expression)))
         return known[expression]
 
     elements = {name: with_expressions(element, number) for name, element in diagram.elements.items()}

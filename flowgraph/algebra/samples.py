@@ -25,9 +25,7 @@ def compare_by_samples(left: Diagram, right: Diagram) -> Comparison:
     Meant for small diagrams: the samples are polynomials in the coefficients and grow with n.
     """
     coefficients = {**left.coefficients, **right.coefficients}
-    ring = exact_ring(
-        coefficients, [*DiagramBehaviour(left).expressions(), *DiagramBehaviour(right).expressions()]
-    )
+    ring = exact_ring(coefficients, [*DiagramBehaviour(left).expressions(), *DiagramBehaviour(right).expressions()])
     samples = sum(delay.length for diagram in (left, right) for delay in diagram.delays()) + 1
     for output in left.outputs:
         for source in [*(port.name for port in left.inputs()), STARTS]:

@@ -68,8 +68,7 @@ def _largest(factors: list[fmpq_poly]) -> tuple[float, float] | None:
 def _harmless(diagram: Diagram, repeated: fmpz_poly) -> bool:
     """Whether repeated modes on the circle do not drive each other: then they stay bounded."""
     return all(
-        is_semisimple(diagram, fmpz_poly(factor.coeffs()[::-1]), "repeated modes")
-        for factor, _ in repeated.factor()[1]
+        is_semisimple(diagram, fmpz_poly(factor.coeffs()[::-1]), "repeated modes") for factor, _ in repeated.factor()[1]
     )
 
 

@@ -112,9 +112,7 @@ def _not_equal(said: str, intent: Intent, question: _Question, comparison: Compa
         reason = f"holds for the numbers of the file only: make {_unnamed(question)} a const, or name it in the claim"
     elif search.file_agrees:
         reason = "with the numbers of the file both sides are equal as far as 512 bits tell"
-    return Verdict(
-        said, intent.span, "refuted", method, counterexample=search.counterexample, reason=reason
-    )
+    return Verdict(said, intent.span, "refuted", method, counterexample=search.counterexample, reason=reason)
 
 
 def _why_undecided(file_agrees: bool) -> str:

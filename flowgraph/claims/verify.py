@@ -31,9 +31,7 @@ def verify_all(
     gives it values; diagrams that merely came along in an include (`included`) need no values.
     `progress` is told the share of claims judged so far.
     """
-    given_values = included | {
-        use.diagram.name for user in diagrams if not _is_open(user) for use in _open_uses(user)
-    }
+    given_values = included | {use.diagram.name for user in diagrams if not _is_open(user) for use in _open_uses(user)}
     judged: list[tuple[Diagram, list[Verdict]]] = []
     done, whole = 0, sum(len(diagram.claims) for diagram in diagrams)
     for diagram in diagrams:

@@ -55,15 +55,17 @@ class _Exchanging:
             for reader, wire in self._network.readers.get(node, ()):
                 if reader not in self._arranged.taken_up:
                     still_read.setdefault(node, []).append(wire.signal)
+        cells_of = {moved.between: moved.cells for moved in self._arranged.moved}
         return {
-            node: SettledLine(self._network, node, still_read.get(node, []), late, self._fresh_names(node))
+            node: SettledLine(
+                self._network, node, still_read.get(node, []), late, self._fresh_names(node, cells_of.get(node))
+            )
             for node, late in read_late.items()
         }
 
-    def _fresh_names(self, node: str) -> FreshNames:
+    def _fresh_names(self, node: str, given: list[str] | None) -> FreshNames:
         """The names the exchange gave the cells of a signal between, else such as stand behind the node."""
-        cells = next((moved.cells for moved in self._arranged.moved if moved.between == node), None)
-        return partial(self._names.cells_behind, node) if cells is None else lambda number, each: cells
+        return partial(self._names.cells_behind, node) if given is None else lambda number, each: given
 
     def _name(self, node: str) -> str:
         return self._arranged.name_of.get(node, node)

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Element, Signal, redirected, signals_read
+from flowgraph.diagram.diagram import Diagram, is_multiply
+from flowgraph.diagram.elements import Element, Gain, Signal, redirected, signals_read
 from flowgraph.diagram.index import index, instant_order
 from flowgraph.passes.change import Change
 from flowgraph.passes.linear import UNIT, Weight, collected, element_of, multiplies_in, product, terms_of
@@ -19,20 +19,37 @@ def fold_gains(diagram: Diagram) -> Change | None:
     several places is folded only where that costs no further multiply; a term by 0 is left out.
     """
     folding = _Folding(diagram)
-    view = index(diagram)
-    order, _ = instant_order(view)
-    for at in order:
-        folding.visit(view.names[at])
-    if not folding.gone and not folding.cleared:
+    for name in _visiting_order(diagram):
+        folding.visit(name)
+    if len(folding.elements) == len(diagram.elements) and not folding.cleared:
         return None
     outputs = {
         name: replace(output, signal=folding.wires.get(output.signal, output.signal))
         for name, output in diagram.outputs.items()
     }
-    said = [f"folded {listed(folding.gone)}"] if folding.gone else []
+    gone = [name for name in diagram.elements if name not in folding.elements]
+    said = [f"folded {listed(gone)}"] if gone else []
     said += [f"left out terms by 0 in {listed(folding.cleared)}"] if folding.cleared else []
     after = replace(diagram, elements=folding.elements, outputs=outputs)
     return Change(after, "; ".join(said), folding.wires)
+
+
+def _visiting_order(diagram: Diagram) -> list[str]:
+    """Each element before those that read it, and else by what it computes; by the file only where that is alike.
+
+    The order of the lines of a file is not to decide which of two gains an adder takes over.
+    """
+    view = index(diagram)
+    order, _ = instant_order(view)
+    level = [0] * len(order)
+    for at in order:
+        level[at] = 1 + max((level[read] for read in view.instant[at]), default=0)
+    gains = [element if isinstance(element, Gain) else None for element in diagram.elements.values()]
+    computed = [
+        (0, 0, "") if gain is None else (-is_multiply(gain.coefficient), len(readers), repr(gain.coefficient))
+        for gain, readers in zip(gains, view.readers, strict=True)
+    ]
+    return [view.names[at] for at in sorted(order, key=lambda at: (level[at], computed[at], at))]
 
 
 class _Folding:
@@ -44,7 +61,6 @@ class _Folding:
     def __init__(self, diagram: Diagram) -> None:
         self.elements: dict[str, Element] = dict(diagram.elements)
         self.wires: dict[Signal, Signal] = {}
-        self.gone: list[str] = []
         self.cleared: list[str] = []
         self._shown = {output.signal.name for output in diagram.outputs.values()}
         self._readers: dict[str, dict[str, None]] = {name: {} for name in diagram.elements}
@@ -95,7 +111,6 @@ class _Folding:
 
     def _remove(self, name: str, source: Signal, weight: Weight) -> None:
         del self.elements[name]
-        self.gone.append(name)
         self._readers[source.name].pop(name, None)
         self._readers[source.name].update(self._readers[name])
         if weight == UNIT:

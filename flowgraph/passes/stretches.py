@@ -1,14 +1,16 @@
 """Lines cut into stretches: neighbouring cells that nothing but the next cell reads.
 
-A cell at rest is as late as the number of cells at rest between it and what drives them: a sum, an
-input, or a cell with a content. Two cells at rest can only be equal where they are equally late, so
-lines cut at the same latenesses are cut fine enough, and a line of a million cells is a few stretches.
+A cell is as late in its run as the number of cells with the same starting content right before it.
+Two cells can only be equal where they are equally late: cell by cell towards their inputs, one would
+otherwise meet another content, or a sum, while the other does not. So lines cut at the same
+latenesses are cut fine enough, and a line of a million cells is a few stretches.
 """
 
 from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
 from collections.abc import Hashable, Iterator
+from itertools import groupby, pairwise
 from typing import NamedTuple
 
 from flowgraph.diagram.diagram import Diagram
@@ -35,57 +37,50 @@ class Lines:
 
     def __init__(self, diagram: Diagram, keys: Keys) -> None:
         self._diagram = diagram
-        self._contents: dict[str, dict[int, Hashable]] = {
-            line.name: _contents(line, keys) for line in diagram.delays() if line.starts
-        }
-        self._filled = {name: list(contents) for name, contents in self._contents.items()}
+        self._runs = {line.name: _runs_of_contents(line, keys) for line in diagram.delays()}
         self._ahead = self._cells_ahead()
         self._cuts = self._latenesses_read()
 
     def stretches(self, line: Delay) -> Iterator[tuple[Stretch, Hashable]]:
         """The stretches of a line in the order of its cells, with their labels."""
-        contents = self._contents.get(line.name, {})
-        before, late = 0, self._ahead[line.name]
-        for filled in [*contents, line.length + 1]:
-            yield from self._at_rest(line.name, before, filled, late)
-            if filled <= line.length:
-                yield Stretch(line.name, filled, filled), ("holds", contents[filled])
-            before, late = filled, 0
+        runs = self._runs[line.name]
+        late = self._ahead[line.name]
+        for (first, content), (behind, _) in pairwise([*runs, (line.length + 1, None)]):
+            for stretch in self._cut(line.name, first, behind - 1, late):
+                yield stretch, (content, stretch.cells, late is None)
+            late = 0
 
-    def _at_rest(self, name: str, before: int, behind: int, late: int | None) -> Iterator[tuple[Stretch, Hashable]]:
-        """The stretches between two cells, the first of them so late; each cell by itself in a ring at rest."""
+    def _cut(self, name: str, first: int, last: int, late: int | None) -> Iterator[Stretch]:
+        """The stretches of a run with so many equal cells ahead; each cell by itself where a ring is ahead."""
         if late is None:
-            for tap in range(before + 1, behind):
-                yield Stretch(name, tap, tap), "in a ring"
+            yield from (Stretch(name, tap, tap) for tap in range(first, last + 1))
             return
-        first = before + 1
-        cells = behind - 1 - before
-        for cut in self._cuts[bisect_right(self._cuts, late) : bisect_right(self._cuts, late + cells)]:
-            last = before + cut - late
-            yield Stretch(name, first, last), ("at rest", last - first + 1)
-            first = last + 1
+        ahead = late + 1 - first
+        for cut in self._cuts[bisect_right(self._cuts, late) : bisect_right(self._cuts, ahead + last)]:
+            yield Stretch(name, first, cut - ahead)
+            first = cut - ahead + 1
 
-    def _late(self, signal: Signal) -> int | None:
-        """How late a signal is; None for a cell of a line at rest whose own lateness must be known first."""
-        if not signal.tap:
-            return 0
-        filled = self._filled.get(signal.name, [])
-        at = bisect_right(filled, signal.tap)
-        return signal.tap - filled[at - 1] if at else None
+    def _run_at(self, name: str, tap: int) -> tuple[int, Hashable]:
+        """The run that holds a cell: its first cell, and the content."""
+        runs = self._runs[name]
+        return runs[bisect_right(runs, tap, key=lambda run: run[0]) - 1]
 
     def _cells_ahead(self) -> dict[str, int | None]:
-        """How late each line's source is; None where it is driven by a ring of cells at rest alone."""
+        """How many cells right before each line hold what its first cell holds; None where they form a ring."""
         lines = {line.name: line for line in self._diagram.delays()}
         ahead: dict[str, int | None] = {}
         for name in lines:
             walk: dict[str, None] = {}
             while name not in ahead and name not in walk:
                 walk[name] = None
-                late = self._late(lines[name].signal)
-                if late is not None:
-                    ahead[name] = late
+                source = lines[name].signal
+                first, content = self._run_at(*source) if source.tap else (0, None)
+                if not source.tap or content != self._runs[name][0][1]:
+                    ahead[name] = 0
+                elif first > 1:
+                    ahead[name] = source.tap + 1 - first
                 else:
-                    name = lines[name].signal.name
+                    name = source.name
             for passed in reversed(walk):
                 if passed not in ahead:
                     source = lines[passed].signal
@@ -94,31 +89,34 @@ class Lines:
         return ahead
 
     def _latenesses_read(self) -> list[int]:
-        """How late the signals are that anything reads, and the last cells before a content or the end of a line."""
+        """How late the cells are that anything reads, and the last ones of runs and lines."""
         read: dict[Signal, None] = {}
         for element in self._diagram.elements.values():
             read.update(dict.fromkeys(signals_read(element)))
             if isinstance(element, Delay):
-                read[Signal(element.name, element.length)] = None
-                read.update(
-                    (Signal(element.name, tap - 1), None) for tap in self._filled.get(element.name, ()) if tap > 1
-                )
+                ends = [first - 1 for first, _ in self._runs[element.name][1:]]
+                read.update((Signal(element.name, end), None) for end in [*ends, element.length])
         read.update((output.signal, None) for output in self._diagram.outputs.values())
         found: set[int] = set()
-        for signal in read:
-            late = self._late(signal)
-            if late is None and (ahead := self._ahead[signal.name]) is not None:
-                late = ahead + signal.tap
-            if late:
-                found.add(late)
+        for name, tap in read:
+            if tap:
+                first, _ = self._run_at(name, tap)
+                ahead = self._ahead[name] if first == 1 else 0
+                if ahead is not None:
+                    found.add(ahead + tap + 1 - first)
         return sorted(found)
 
 
-def _contents(line: Delay, keys: Keys) -> dict[int, Hashable]:
-    """The cells that do not start with 0, with the keys of their contents."""
-    rest = keys.of_expression(ZERO)
-    found = ((tap, keys.of_expression(start)) for tap, start in enumerate(line.starts, start=1))
-    return {tap: key for tap, key in found if key != rest}
+def _runs_of_contents(line: Delay, keys: Keys) -> list[tuple[int, Hashable]]:
+    """The first cell and the content of each run of cells that start with the same."""
+    runs: list[tuple[int, Hashable]] = []
+    tap = 1
+    for start, cells in groupby(line.starts or [ZERO]):
+        content = keys.of_expression(start)
+        if not runs or runs[-1][1] != content:
+            runs.append((tap, content))
+        tap += sum(1 for _ in cells)
+    return runs
 
 
 class Numbering:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import groupby
+
 from flowgraph.diagram.diagram import Diagram
 from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Signal, signals_read
 from flowgraph.diagram.expression import Expression, names_in
@@ -36,8 +38,11 @@ def _element_faults(diagram: Diagram, element: Element) -> list[str]:
         if len(read) < 2 or len(set(read)) < len(read):
             faults.append(f"the adder {element.name} has one input, or one signal twice")
     if isinstance(element, Delay) and (element.length < 1 or len(element.starts) not in (0, element.length)):
-        faults.append(f"the delay {element.name} has {counted(len(element.starts), 'content')} for {counted(element.length, 'cell')}")
-    unknown = {name for used in coefficients_of(element) for name in names_in(used)} - diagram.coefficients.keys()
+        cells = counted(element.length, "cell")
+        faults.append(f"the delay {element.name} has {counted(len(element.starts), 'content')} for {cells}")
+    unknown = {
+        name for used, _ in groupby(coefficients_of(element)) for name in names_in(used)
+    } - diagram.coefficients.keys()
     faults.extend(f"{element.name} reads the coefficient {name}, which is not there" for name in sorted(unknown))
     return faults
 

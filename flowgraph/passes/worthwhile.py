@@ -174,7 +174,7 @@ class _Chain:
 
 
 def is_worthwhile(start: _Start, middle: _Middle, end: _End) -> bool:
-    """Whether cells are saved as drawn, and none are lost against the diagram with all its lines shared."""
+    """Whether cells are saved as drawn, and more than sharing all lines would save without an exchange."""
     before = max(start.others, start.reach) + max(middle.own, middle.reach) + max(end.own, end.others)
     after = max(start.others, middle.reach) + max(end.own, start.reach) + max(middle.own, end.others)
     return saved_as_drawn(start, middle, end) > 0 and before > after

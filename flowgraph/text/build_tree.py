@@ -26,7 +26,7 @@ class MisplacedError(ValueError):
 class TreeBuilder(Transformer[Token, s.Node]):
     """One method a rule; every terminal is a `Word` with its place in the file.
 
-    `origin` is the offset of the line that Lark itself reads.
+    `origin` is the offset of the line that is being read.
     """
 
     origin = 0

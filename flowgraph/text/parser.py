@@ -11,7 +11,6 @@ from lark import Lark, Token
 
 from flowgraph.text.build_tree import TreeBuilder
 from flowgraph.text.syntax import Node
-from flowgraph.text.table import LineTable
 
 
 def grammar_text() -> str:
@@ -43,18 +42,12 @@ class LineParser:
             transformer=self._builder,
             maybe_placeholders=True,
         )
-        self.table = LineTable(self._lark)
 
     def parse(self, text: str, start: int, end: int) -> Node:
         """The node for the characters `start` .. `end` of `text`.
 
         Raises lark.UnexpectedInput (its offsets count from `start`), TooLargeError or MisplacedError.
         """
-        node = self.table.parse(text, start, end)
-        return self.parse_with_lark(text, start, end) if node is None else node
-
-    def parse_with_lark(self, text: str, start: int, end: int) -> Node:
-        """The same by Lark itself, three times slower: it says what a line that is none stumbles over."""
         self._builder.origin = start
         node: Node = self._lark.parse(text[start:end])  # type: ignore[assignment]
         return node

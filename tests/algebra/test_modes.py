@@ -142,9 +142,7 @@ def test_an_oscillator_that_nothing_starts_has_a_hidden_mode() -> None:
 
 def test_direct_form_one_has_redundant_cells_at_z_equal_0() -> None:
     """Four cells for order 2: what is hidden is at the origin, and stops by itself."""
-    section = Section(
-        tuple(Factor(Fraction(k, 4)) for k in (1, 3, -2)), tuple(Factor(Fraction(k, 8)) for k in (-5, 3))
-    )
+    section = Section(tuple(Factor(Fraction(k, 4)) for k in (1, 3, -2)), tuple(Factor(Fraction(k, 8)) for k in (-5, 3)))
     found = analysed("input x", "output y", *direct_one(section, "x", "y"))
     assert (found.cells, found.order) == (4, 2)
     assert {mode[0] for mode in hidden(found)} == {"x"}

@@ -104,9 +104,7 @@ def all_pole_lattice(cells: int, coefficient: dict[int, Expression], names: dict
         elements[f"f{m - 1}"] = Adder(f"f{m - 1}", (Term(source), Term(Signal(f"s{m}", 1), True, coefficient[m])))
     for m in range(1, cells + 1):
         elements[f"s{m}"] = Delay(f"s{m}", Signal("f0") if m == 1 else Signal(f"g{m - 1}"))
-        elements[f"g{m}"] = Adder(
-            f"g{m}", (Term(Signal(f"f{m - 1}"), False, coefficient[m]), Term(Signal(f"s{m}", 1)))
-        )
+        elements[f"g{m}"] = Adder(f"g{m}", (Term(Signal(f"f{m - 1}"), False, coefficient[m]), Term(Signal(f"s{m}", 1))))
     return Diagram("lattice", elements, {"y": Output("y", Signal("f0")), "b": Output("b", Signal(f"g{cells}"))}, names)
 
 

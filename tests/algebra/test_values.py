@@ -163,9 +163,9 @@ def test_values_are_exact_through_coefficients_that_follow_others() -> None:
 def test_a_hundred_thousand_coefficients_in_a_row_are_resolved() -> None:
     """Following is resolved without recursion."""
     names = [f"c{k}" for k in range(100_000)]
-    chain = {
-        name: Coefficient(name, Name(following)) for name, following in pairwise(names)
-    } | {names[-1]: Coefficient(names[-1], number("0.5"))}
+    chain = {name: Coefficient(name, Name(following)) for name, following in pairwise(names)} | {
+        names[-1]: Coefficient(names[-1], number("0.5"))
+    }
     assert Values(chain).fraction(Name("c0")) == Fraction(1, 2)
 
 

@@ -1,6 +1,6 @@
 """`check` of a small file as a whole process, in turn with `python -c "import lark"`: median ratio.
 
-    python tests/bench/check_start.py
+python tests/bench/check_start.py
 """
 
 from __future__ import annotations

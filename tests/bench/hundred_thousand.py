@@ -1,6 +1,6 @@
 """100 000 elements from `repeat`: elaborate, check and schedule. Prints seconds and peak memory.
 
-    python tests/bench/hundred_thousand.py
+python tests/bench/hundred_thousand.py
 """
 
 from __future__ import annotations

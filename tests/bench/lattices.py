@@ -1,6 +1,6 @@
 """Proofs on all-pole lattices: 12 cells with names, 50 with numbers, 50 with names.
 
-    python tests/bench/lattices.py
+python tests/bench/lattices.py
 """
 
 from __future__ import annotations

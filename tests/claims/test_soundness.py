@@ -69,9 +69,7 @@ def holds_anything(chain: Chain) -> bool:
     return any(any((*section.past_x, *section.past_y)) for section in chain.sections)
 
 
-def intents(
-    chain: Chain, random: Random, names: list[str], number: int, *, held: bool
-) -> tuple[list[str], list[str]]:
+def intents(chain: Chain, random: Random, names: list[str], number: int, *, held: bool) -> tuple[list[str], list[str]]:
     """Up to three claims that say the diagram is `chain`, and the other diagram they need. A ratio is
     silent about contents, so there is none where the diagram has `held` some."""
     equation = len(chain.sections) == 1 and not chain.late

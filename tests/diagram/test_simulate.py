@@ -90,9 +90,7 @@ def test_two_cells_that_feed_each_other_swap() -> None:
 
 def test_watched_signals_are_told_beside_the_ports() -> None:
     """A watched signal may be any tap, and is returned under the key it was asked by."""
-    made = diagram(
-        Input("x"), Delay("line", Signal("x"), 2), Gain("y", number("3"), Signal("line", 2)), outputs=("y",)
-    )
+    made = diagram(Input("x"), Delay("line", Signal("x"), 2), Gain("y", number("3"), Signal("line", 2)), outputs=("y",))
     told = simulate(made, exact_values(made), {"x": [ONE]}, 3, ZERO, {"late": Signal("line", 1)})
     assert told == {"y": [0, 0, 3], "late": [0, 1, 0]}
 

@@ -20,8 +20,8 @@ TO_TWO_CELLS = {
     "a long line beside cells": f"delay xs = x by 2\ndelay y1, y2 = y\nadder y = {FORWARD} - a1*y1 - a2*y2",
     "long lines and gain lines": LINES
     + f"gain g0 = b0*x\ngain g1 = b1*xs[1]\ngain g2 = b2*xs[2]\nadder y = g0 + g1 + g2 {BACK}",
-    "wires between": "wire xin = x\nwire fb = y\nwire vv = v\ndelay xs = xin by 2\ndelay ys = fb by 2\nwire x1 = xs[1]\n"
-    "gain g0 = b0*xin\ngain g1 = b1*x1\nadder v = g0 + g1 + b2*xs[2]\n"
+    "wires between": "wire xin = x\nwire fb = y\nwire vv = v\ndelay xs = xin by 2\ndelay ys = fb by 2\n"
+    "wire x1 = xs[1]\ngain g0 = b0*xin\ngain g1 = b1*x1\nadder v = g0 + g1 + b2*xs[2]\n"
     f"adder y = vv {BACK}",
     "gains by 1 between": "gain xin = 1*x\ngain fb = 1*y\ngain vv = 1*v\ndelay xs = xin by 2\ndelay ys = fb by 2\n"
     f"adder v = b0*xin + b1*xs[1] + b2*xs[2]\nadder y = vv {BACK}",

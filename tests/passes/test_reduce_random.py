@@ -1,13 +1,14 @@
 """What reducing promises for every diagram, tried on random ones."""
 
+import itertools
 import random
 
-from drawn import behaviour, cascades, reordered
+from drawn import behaviour, cascades, diagram_of, reordered
 from hypothesis import given
 from hypothesis import strategies as st
 from strategies import diagrams
 
-from flowgraph.diagram.diagram import Diagram, count
+from flowgraph.diagram.diagram import Counts, Diagram, count
 from flowgraph.diagram.elements import Delay
 from flowgraph.passes.cost import cost
 from flowgraph.passes.reduce import reduce_diagram
@@ -42,6 +43,16 @@ def test_counts_do_not_depend_on_the_order_of_lines(diagram: Diagram, chance: ra
     names = list(diagram.elements)
     chance.shuffle(names)
     assert reduce_diagram(reordered(diagram, names)).counts() == reduce_diagram(diagram).counts()
+
+
+def test_the_file_does_not_choose_between_gains() -> None:
+    """Of two gains of one signal that an adder cannot both take over for nothing, it is the same in any order."""
+    lines = ["gain twice = -2*u", "gain other = -3*u", "gain third = 1/3*u", "adder y = twice - 3*third - x"]
+    ports = "input x, u\noutput y, other\n"
+    found = {
+        reduce_diagram(diagram_of(ports + "\n".join(order))).counts()[1] for order in itertools.permutations(lines)
+    }
+    assert found == {Counts(0, 1, 2)}
 
 
 @given(ANY)

@@ -87,7 +87,7 @@ def test_channels_are_the_ports_in_the_order_of_the_file(tmp_path: Path) -> None
         file.setnchannels(2)
         file.setsampwidth(3)
         file.setframerate(48000)
-        file.writeframes(b"\x00\x00\x80" b"\xff\xff\x7f" b"\x00\x00\x40" b"\x01\x00\x00")
+        file.writeframes(b"\x00\x00\x80\xff\xff\x7f\x00\x00\x40\x01\x00\x00")
     run(passing("left", "right", rate=48000), tmp_path / "in.wav", tmp_path / "out.wav")
     assert wavfile.read(tmp_path / "out.wav")[1].tolist() == [[-1.0, 1 - 2.0**-23], [0.5, 2.0**-23]]
 

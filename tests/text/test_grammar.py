@@ -3,20 +3,13 @@
 from __future__ import annotations
 
 import logging
-from collections.abc import Callable, Iterator
 
 import pytest
 from lark import Lark, UnexpectedInput
 from lark import logger as lark_logger
-from message_files import all_cases
 
-from flowgraph.source.span import Source
-from flowgraph.text.build_tree import MisplacedError
-from flowgraph.text.exact import TooLargeError
 from flowgraph.text.load import load_text
 from flowgraph.text.parser import grammar_text, line_parser
-from flowgraph.text.read_lines import Block, Line, read_lines
-from flowgraph.text.syntax import Node
 from flowgraph.text.words import FIRST_WORDS, LATER_FIRST_WORDS, RESERVED
 
 
@@ -123,32 +116,3 @@ def test_what_comes_later_is_said_to_be_unknown(word: str) -> None:
     """One wording for all of it."""
     findings = load_text(f"diagram level {{\n input x\n output y = x\n intent y / x = 1\n {word} x\n}}\n").findings
     assert [found.message for found in findings] == [f"`{word}` is not known here yet"]
-
-
-def logical_lines(block: Block) -> Iterator[Line]:
-    """Every line of a text that is not broken before it is parsed, however deep."""
-    for line in block.lines:
-        head = line.head if isinstance(line, Block) else line
-        if not head.broken:
-            yield head
-        if isinstance(line, Block):
-            yield from logical_lines(line)
-
-
-def outcome(parse: Callable[[str, int, int], Node | None], text: str, line: Line) -> Node | str | None:
-    """The node of a line; None where it is none; else what is wrong with it."""
-    try:
-        return parse(text, line.start, line.end)
-    except UnexpectedInput:
-        return None
-    except (MisplacedError, TooLargeError) as error:
-        return f"{type(error).__name__}: {error}"
-
-
-@pytest.mark.parametrize("text", [case.source for case in all_cases()], ids=[case.title for case in all_cases()])
-def test_the_tables_read_what_lark_reads(text: str) -> None:
-    """The loop over the tables makes of every line what Lark makes of it, and takes no other line."""
-    parser = line_parser()
-    block, _ = read_lines(Source("level.sfg", text))
-    for line in logical_lines(block):
-        assert outcome(parser.table.parse, text, line) == outcome(parser.parse_with_lark, text, line)
