@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-
 from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Signal, Term
 from flowgraph.diagram.expression import Expression
 from flowgraph.source.diagnostic import Note
@@ -19,7 +17,9 @@ from flowgraph.text.signals import is_signal, signal
 def adder(scope: Scope, node: s.AdderLine, line: Instance) -> Adder:
     """The adder of a line. Raises Fault."""
     name = full_name(scope, node.name, line.env)
-    terms = tuple(_terms(scope, node.right, line.env, False))
+    found: list[Term] = []
+    _take_terms(scope, node.right, line.env, False, found)
+    terms = tuple(found)
     span = scope.span(node.name.start, node.name.end)
     if len(terms) < 2:
         raise _one_input(scope, name, terms, node)
@@ -60,24 +60,24 @@ def _twice(scope: Scope, first: Term, second: Term) -> Fault:
     )
 
 
-def _terms(scope: Scope, expr: s.Expr, env: Env, negative: bool) -> Iterator[Term]:
-    """The terms of the right side of an adder; a total stands for its terms."""
+def _take_terms(scope: Scope, expr: s.Expr, env: Env, negative: bool, found: list[Term]) -> None:
+    """Adds the terms of the right side of an adder to `found`; a total stands for its terms."""
     if isinstance(expr, s.Total):
         for minus, body in expr.terms:
-            yield from _term(scope, body, env, negative is not minus)
+            _take_term(scope, body, env, negative is not minus, found)
     else:
-        yield from _term(scope, expr, env, negative)
+        _take_term(scope, expr, env, negative, found)
 
 
-def _term(scope: Scope, body: s.Expr, env: Env, negative: bool) -> Iterator[Term]:
-    if type(body) is s.Reference and is_signal(scope, body, env):
-        yield Term(signal(scope, body, env), negative, None, scope.span(body.start, body.end))
+def _take_term(scope: Scope, body: s.Expr, env: Env, negative: bool, found: list[Term]) -> None:
+    if isinstance(body, s.Reference) and is_signal(scope, body, env):
+        found.append(Term(signal(scope, body, env), negative, None, scope.span(body.start, body.end)))
     elif isinstance(body, s.Fold) and body.kind == "total":
         for inner in steps(scope, body, env):
-            yield from _terms(scope, body.body, inner, negative)
+            _take_terms(scope, body.body, inner, negative, found)
     else:
         factor, last = _scaled_signal(scope, body, env)
-        yield Term(signal(scope, last, env), negative, factor, scope.span(last.start, last.end))
+        found.append(Term(signal(scope, last, env), negative, factor, scope.span(last.start, last.end)))
 
 
 def _scaled_signal(scope: Scope, body: s.Expr, env: Env) -> tuple[Expression, s.Reference]:

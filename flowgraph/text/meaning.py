@@ -70,9 +70,6 @@ def _quick_whole(expr: s.Expr, env: Env) -> int | None:
 
 def index(scope: Scope, at: s.At, env: Env) -> int | str:
     """A const integer, or a label. Raises Fault."""
-    quick = _quick_whole(at.place, env)
-    if quick is not None:
-        return quick
     expr = at.place
     if isinstance(expr, s.Reference) and not expr.parts:
         found = env.get(expr.name)
