@@ -201,11 +201,9 @@ def _support(space: nmod_mat) -> set[int]:
 def is_semisimple(diagram: Diagram, factor: fmpz_poly, seed: str) -> bool:
     """Whether modes at the roots of `factor` (in z) never drive each other: factor(A) has full nullity.
 
-    That is, the kernel of factor(A) is the kernel of factor(A)^2. False beyond CELL_LIMIT cells.
+    That is, the kernel of factor(A) is the kernel of factor(A)^2. For up to CELL_LIMIT cells.
     """
     prime = drawn_prime(seed)
     states = state_matrices(diagram, Residues(diagram.coefficients, prime, seed))
-    if len(states.cells) > CELL_LIMIT:
-        return False
     a = _dense(states.a, len(states.cells), prime)
     return bool(_value_at(factor, a, 1, prime).rank() == _value_at(factor, a, 2, prime).rank())

@@ -7,12 +7,12 @@ from dataclasses import dataclass
 from flint import arb, arb_mat, ctx, fmpq_poly, fmpz_poly
 
 from flowgraph.algebra.exact_rings import NumberPolynomials
-from flowgraph.algebra.modes import is_semisimple
+from flowgraph.algebra.modes import CELL_LIMIT, is_semisimple
 from flowgraph.algebra.numbers import numbered
 from flowgraph.algebra.rational_functions import symbolic_valuation
 from flowgraph.algebra.solve import determinants
 from flowgraph.algebra.stability import Stability, stability_of_factors
-from flowgraph.algebra.states import state_matrices
+from flowgraph.algebra.states import cells_of, state_matrices
 from flowgraph.algebra.transfer import factors_in_z, roots_in_z
 from flowgraph.algebra.values import Values
 from flowgraph.diagram.diagram import Diagram
@@ -25,7 +25,10 @@ BALL_CELLS = 120
 
 @dataclass(frozen=True, slots=True)
 class StabilityVerdict:
-    """`stability` is None where certified balls do not tell; `exact` when fractions decided.
+    """`stability` is None where it is not told; `exact` when fractions decided.
+
+    Not told are certified balls that touch the limit, and repeated modes on the circle among more
+    than CELL_LIMIT cells.
 
     `largest` is the pole of largest radius as (real, imaginary), for reading only; None without poles.
     """
@@ -46,8 +49,12 @@ def stability_at_values(diagram: Diagram) -> StabilityVerdict:
     if not numbers.exact:
         return StabilityVerdict(_certified(diagram), False, largest)
     stability, repeated = stability_of_factors(factors)
-    if repeated.degree() > 0 and _harmless(numbers.diagram, repeated):
-        stability = "marginal"
+    if repeated.degree() > 0:
+        # Modes that occur twice on the circle grow only where one drives the other.
+        if len(cells_of(diagram)) > CELL_LIMIT:
+            return StabilityVerdict(None, True, largest)
+        if _harmless(numbers.diagram, repeated):
+            stability = "marginal"
     return StabilityVerdict(stability, True, largest)
 
 

@@ -75,6 +75,9 @@ def _stable(requirement: StableRequirement, diagram: Diagram) -> Verdict:
             return _verdict(requirement, diagram, "refuted", method, reason)
         case "unstable":
             return _verdict(requirement, diagram, "refuted", method, f"unstable: {_told(found)}")
+        case None if found.exact:
+            # Whether such modes also grow is not told for so many cells; they do not decay either way.
+            return _verdict(requirement, diagram, "refuted", method, f"repeated modes stay for ever, {_told(found)}")
         case None:
             reason = f"too close to the limit to tell: {_told(found)}"
             return _verdict(requirement, diagram, "undecided", method, reason)

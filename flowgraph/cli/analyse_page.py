@@ -97,7 +97,14 @@ def _cells(found: Analysis) -> list[str]:
 def _stability(found: Analysis) -> list[str]:
     if found.stability is not None:
         return [f"  stability    {found.stability} ({'exact' if found.exact else 'certified'})"]
-    return ["  stability    undecided: too close to the limit to tell"] if found.poles is not None else []
+    if found.numbers is None:
+        return []
+    why = (
+        "not stable: modes that stay for ever occur twice"
+        if found.exact
+        else "undecided: too close to the limit to tell"
+    )
+    return [f"  stability    {why}"]
 
 
 def _equation(output: str, equation: NamedEquation) -> list[str]:

@@ -7,8 +7,11 @@ from random import Random
 
 import pytest
 from flint import fmpq, fmpq_poly
+from read_diagram import read_diagram
 
 from flowgraph.algebra.stability import stability_of_factors
+from flowgraph.algebra.stability_at_values import stability_at_values
+from flowgraph.diagram.diagram import Diagram
 
 
 def verdict(*coefficients: str) -> str:
@@ -68,3 +71,30 @@ def test_the_verdict_follows_the_roots_a_polynomial_was_made_from() -> None:
             coefficients = [Fraction(1), -2 * near * c, near * near]
             product = product * fmpq_poly([fmpq(value.numerator, value.denominator) for value in coefficients])
         assert stability_of_factors([product])[0] == ("stable" if inside else "unstable")
+
+
+def two_integrators(chained: bool, cells: int) -> Diagram:
+    """Two running sums, one after the other or side by side, behind a line of some cells."""
+    second = "s1" if chained else "line[end]"
+    return read_diagram(f"""
+        diagram d {{
+            input x
+            output y
+            delay line = x by {cells}
+            adder s1 = line[end] + m1
+            delay m1 = s1
+            adder s2 = {second} + m2
+            delay m2 = s2
+            adder y = s1 + s2
+        }}""")
+
+
+def test_repeated_modes_on_the_circle_are_unstable_only_where_one_drives_the_other() -> None:
+    """Side by side two sums stay where they are; in a chain the second runs away."""
+    assert stability_at_values(two_integrators(True, 3)).stability == "unstable"
+    assert stability_at_values(two_integrators(False, 3)).stability == "marginal"
+
+
+def test_repeated_modes_among_very_many_cells_are_not_told() -> None:
+    """Beyond the size at which this is looked at, nothing is claimed."""
+    assert stability_at_values(two_integrators(False, 1000)).stability is None
