@@ -54,7 +54,7 @@ class Definer:
 
     def _define(self, name: s.Reference, env: Env, kind: str) -> str:
         full = full_name(self.scope, name, env)
-        if any(isinstance(part, str) for part in name.parts):
+        if str in map(type, name.parts):
             raise self.scope.fault(
                 "dotted-name",
                 f"{full} belongs to a used diagram and cannot be defined here",

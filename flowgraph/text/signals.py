@@ -69,7 +69,9 @@ def _direct(scope: Scope, reference: s.Reference, env: Env) -> tuple[str, Signal
         elif name in scope.lines:
             return _tap(scope, name, part, reference, env)
         else:
-            name += f"[{_member(scope, name, reference, part, env)}]"
+            place = part.place
+            plain = env.get(place.name) if isinstance(place, s.Reference) and not place.parts else None
+            name += f"[{_member(scope, name, reference, part, env) if plain is None else plain}]"
     found = scope.signals.get(name)
     if found is None and name not in scope.aliases:
         refuse_label(scope, reference, env)
