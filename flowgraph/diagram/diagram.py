@@ -86,13 +86,15 @@ def count(diagram: Diagram) -> Counts:
     A coefficient always counts, unless a use gave it a number: then it is that number.
     """
     given = given_numbers(diagram)
-    multiplies: dict[Expression, bool] = {}
+    # By identity: lines inside a repeat share the expressions that do not change with it.
+    multiplies: dict[int, bool] = {}
 
     def needs_multiply(coefficient: Expression) -> bool:
-        if coefficient not in multiplies:
+        known = multiplies.get(id(coefficient))
+        if known is None:
             number = given.get(coefficient.name) if isinstance(coefficient, Name) else None
-            multiplies[coefficient] = is_multiply(number or coefficient)
-        return multiplies[coefficient]
+            known = multiplies[id(coefficient)] = is_multiply(number or coefficient)
+        return known
 
     cells = products = adds = 0
     for element in diagram.elements.values():
@@ -103,7 +105,7 @@ def count(diagram: Diagram) -> Counts:
                 products += needs_multiply(coefficient)
             case Adder(terms=terms):
                 adds += len(terms) - 1
-                products += sum(needs_multiply(term.coefficient) for term in terms if term.coefficient is not None)
+                products += sum([needs_multiply(term.coefficient) for term in terms if term.coefficient is not None])
             case Input():
                 pass
     return Counts(cells, products, adds)

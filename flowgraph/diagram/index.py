@@ -35,13 +35,16 @@ def index(diagram: Diagram) -> Index:
     reads: list[list[int]] = []
     readers: list[list[int]] = [[] for _ in names]
     instant: list[list[int]] = []
-    is_delay = [isinstance(element, Delay) for element in diagram.elements.values()]
     for at, element in enumerate(diagram.elements.values()):
-        sources = [number[signal.name] for signal in signals_read(element) if signal.name in number]
+        signals = signals_read(element)
+        sources = [number[name] for name, _ in signals if name in number]
         reads.append(sources)
         for source in sources:
             readers[source].append(at)
-        instant.append([] if is_delay[at] else [source for source in sources if not is_delay[source]])
+        if isinstance(element, Delay):
+            instant.append([])
+        else:
+            instant.append([number[name] for name, tap in signals if tap == 0 and name in number])
     return Index(names, number, reads, readers, instant)
 
 

@@ -54,30 +54,29 @@ def schedule(diagram: Diagram) -> Schedule:
     Raises DelayFreeLoopError where wires form a loop without a delay.
     """
     inputs = [Operation(port.name, "input", ()) for port in diagram.inputs()]
-    sums = [element for element in diagram.elements.values() if isinstance(element, Adder | Gain)]
-    computed = [
-        Operation(element.name, "adder" if isinstance(element, Adder) else "gain", signals_read(element))
-        for element in _in_order(sums)
-    ]
+    computed = _in_order(
+        [
+            Operation(element.name, "adder" if isinstance(element, Adder) else "gain", signals_read(element))
+            for element in diagram.elements.values()
+            if isinstance(element, Adder | Gain)
+        ]
+    )
     outputs = [Operation(name, "output", (output.signal,)) for name, output in diagram.outputs.items()]
     return Schedule((*inputs, *computed, *outputs, *_updates(diagram.delays())), count(diagram))
 
 
-def _in_order(elements: list[Adder | Gain]) -> list[Adder | Gain]:
+def _in_order(sums: list[Operation]) -> list[Operation]:
     """Adders and gains, each after those whose value it needs within the same sample.
 
     What is read behind a delay is in a cell already and orders nothing.
     """
-    number = {element.name: at for at, element in enumerate(elements)}
-    needs = [
-        [number[signal.name] for signal in signals_read(element) if signal.tap == 0 and signal.name in number]
-        for element in elements
-    ]
+    number = {operation.name: at for at, operation in enumerate(sums)}
+    needs = [[number[name] for name, tap in operation.reads if not tap and name in number] for operation in sums]
     groups = strong_components(needs)
     for group in groups:
         if len(group) > 1 or group[0] in needs[group[0]]:
-            raise DelayFreeLoopError([elements[at].name for at in group])
-    return [elements[group[0]] for group in groups]
+            raise DelayFreeLoopError([sums[at].name for at in group])
+    return [sums[group[0]] for group in groups]
 
 
 def _updates(delays: list[Delay]) -> list[Operation]:

@@ -80,11 +80,21 @@ def index(scope: Scope, at: s.At, env: Env) -> int | str:
     return whole(scope, expr, env)
 
 
+def plain_index(at: s.At, env: Env) -> int | str | None:
+    """The value of an index that is just the variable of a repeat, as most are; None for all others."""
+    place = at.place
+    return env.get(place.name) if isinstance(place, s.Reference) and not place.parts else None
+
+
 def full_name(scope: Scope, reference: s.Reference, env: Env) -> str:
     """`f[2]`, `in[left]`, `low.w1`: the name with every index worked out. Raises Fault."""
     name = reference.name
     for part in reference.parts:
-        name += f".{part}" if isinstance(part, str) else f"[{index(scope, part, env)}]"
+        if isinstance(part, str):
+            name += f".{part}"
+        else:
+            plain = plain_index(part, env)
+            name += f"[{index(scope, part, env) if plain is None else plain}]"
     return name
 
 

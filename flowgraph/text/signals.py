@@ -5,7 +5,7 @@ from __future__ import annotations
 from flowgraph.diagram.elements import Signal
 from flowgraph.source.diagnostic import Note
 from flowgraph.text import syntax as s
-from flowgraph.text.meaning import index, whole
+from flowgraph.text.meaning import index, plain_index, whole
 from flowgraph.text.names import refuse_label, undefined
 from flowgraph.text.scope import Env, Fault, Scope
 
@@ -69,8 +69,7 @@ def _direct(scope: Scope, reference: s.Reference, env: Env) -> tuple[str, Signal
         elif name in scope.lines:
             return _tap(scope, name, part, reference, env)
         else:
-            place = part.place
-            plain = env.get(place.name) if isinstance(place, s.Reference) and not place.parts else None
+            plain = plain_index(part, env)
             name += f"[{_member(scope, name, reference, part, env) if plain is None else plain}]"
     found = scope.signals.get(name)
     if found is None and name not in scope.aliases:
