@@ -22,6 +22,8 @@ def configure(parser: argparse.ArgumentParser) -> None:
 
 def execute(options: argparse.Namespace) -> int:
     """Prints the findings of every file; 1 if one of them is an error, else 0."""
+    if options.values:
+        refuse("check looks at the structure, which no value changes: --with goes with verify, analyse and the others")
     findings: list[Diagnostic] = []
     diagrams: list[tuple[str, Diagram]] = []
     for path, names in _by_file(options.files).items():

@@ -70,3 +70,10 @@ def test_a_name_that_is_not_in_the_file_ends_with_code_2(folder: Path, capsys: p
     (folder / "level.sfg").write_text(GOOD)
     assert main(["check", "level.sfg:rain"]) == 2
     assert capsys.readouterr().err == "error: level.sfg: there is no diagram rain here (there are: level)\n"
+
+
+def test_a_value_to_try_is_refused(folder: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """No value changes the structure, so --with is not taken in silence."""
+    (folder / "level.sfg").write_text(GOOD)
+    assert main(["check", "level.sfg", "--with", "r=1"]) == 2
+    assert capsys.readouterr().err.startswith("error: check looks at the structure")
