@@ -74,6 +74,8 @@ def _unread(scope: Scope, name: str, kind: str, start: int, end: int) -> Diagnos
 
 def _warn_needless(scope: Scope, diagram: Diagram, unused: dict[str, s.Reference], view: Index) -> None:
     """`unused` on a name that is read after all, with `unused` itself left out of account."""
+    if not unused:
+        return
     shown = [output.signal.name for output in diagram.outputs.values()]
     plain = spread(view.reads, [view.number[name] for name in shown if name in view.number])
     for name, reference in unused.items():
