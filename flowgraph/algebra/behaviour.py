@@ -9,10 +9,10 @@ from typing import Protocol, TypeVar
 
 from flowgraph.algebra.ring import Ring
 from flowgraph.algebra.size import Extent, SizeArithmetic, extent_of_diagram
-from flowgraph.algebra.solve import solve, wires
+from flowgraph.algebra.solve import solve
 from flowgraph.algebra.valuation import Valuation
 from flowgraph.diagram.diagram import Coefficient, Diagram
-from flowgraph.diagram.elements import Delay, Input
+from flowgraph.diagram.elements import expressions_of
 from flowgraph.diagram.expression import (
     Expression,
     Name,
@@ -46,13 +46,8 @@ class DiagramBehaviour:
 
     def expressions(self) -> list[Expression]:
         """All coefficients and starting contents, each once, in the order of the file."""
-        found: dict[Expression, None] = {}
-        for element in self.diagram.elements.values():
-            if not isinstance(element, Input):
-                found.update((term.coefficient, None) for term in wires(element) if term.coefficient is not None)
-            if isinstance(element, Delay):
-                found.update(dict.fromkeys(element.starts))
-        return list(found)
+        elements = self.diagram.elements.values()
+        return list(dict.fromkeys(expression for element in elements for expression in expressions_of(element)))
 
     def responses(self, ring: Ring[R], pairs: list[Pair]) -> dict[Pair, tuple[R, list[R]]]:
         solution = solve(self.diagram, ring, dict.fromkeys(output for output, _ in pairs))

@@ -13,7 +13,7 @@ from typing import cast
 from flint import fmpq, fmpq_mpoly, fmpq_mpoly_ctx, fmpq_poly, fmpz_mpoly
 
 from flowgraph.algebra.rational_functions import RationalFunction, polynomials_in, symbolic_valuation
-from flowgraph.algebra.ring import ExactRing, Polynomial
+from flowgraph.algebra.ring import ExactRing, Operators, Polynomial
 from flowgraph.algebra.valuation import Valuation
 from flowgraph.diagram.diagram import Coefficient
 from flowgraph.diagram.expression import Expression
@@ -29,7 +29,7 @@ class TooLarge(ArithmeticError):
     """The exact solution would take more than the stated work."""
 
 
-class NumberPolynomials:
+class NumberPolynomials(Operators[fmpq_poly]):
     """Polynomials in w with rational coefficients, for diagrams in which nothing varies."""
 
     invertible = False
@@ -58,12 +58,6 @@ class NumberPolynomials:
             raise TooLarge
         return left * right
 
-    def plus(self, left: fmpq_poly, right: fmpq_poly) -> fmpq_poly:
-        return left + right
-
-    def minus(self, left: fmpq_poly, right: fmpq_poly) -> fmpq_poly:
-        return left - right
-
     def quotient(self, upper: fmpq_poly, lower: fmpq_poly) -> fmpq_poly:
         return upper // lower
 
@@ -71,7 +65,7 @@ class NumberPolynomials:
         return polynomials
 
 
-class SymbolPolynomials:
+class SymbolPolynomials(Operators[fmpq_mpoly]):
     """Polynomials in w and in all that varies, with rational coefficients."""
 
     invertible = False
@@ -112,12 +106,6 @@ class SymbolPolynomials:
         if len(product) > TERM_LIMIT:
             raise TooLarge
         return product
-
-    def plus(self, left: fmpq_mpoly, right: fmpq_mpoly) -> fmpq_mpoly:
-        return left + right
-
-    def minus(self, left: fmpq_mpoly, right: fmpq_mpoly) -> fmpq_mpoly:
-        return left - right
 
     def quotient(self, upper: fmpq_mpoly, lower: fmpq_mpoly) -> fmpq_mpoly:
         self._work += len(upper)

@@ -11,6 +11,7 @@ from flint import acb, arb, ctx, fmpq, fmpq_poly, fmpz_poly
 from flowgraph.algebra.behaviour import DiagramBehaviour
 from flowgraph.algebra.exact_rings import TooLarge
 from flowgraph.algebra.numbers import numbered
+from flowgraph.algebra.ring import Operators
 from flowgraph.algebra.transfer import NumberTransfer, number_transfers
 from flowgraph.algebra.values import Values, ball_of
 from flowgraph.diagram.diagram import Diagram
@@ -24,7 +25,7 @@ MOST_DECIBELS = 100_000
 """Limits beyond this are not looked at for being met exactly: 10^10000 is no gain."""
 
 
-class _PointOnCircle:
+class _PointOnCircle(Operators[acb]):
     """Certified balls at w = exp(-2 pi i turn): a field as long as no pivot encloses zero."""
 
     invertible = True
@@ -43,15 +44,6 @@ class _PointOnCircle:
         # exp_pi_i is exp(pi i x); whole turns are taken off exactly.
         angle = -2 * self._turn * samples % 2
         return acb(ball_of(angle)).exp_pi_i()
-
-    def times(self, left: acb, right: acb) -> acb:
-        return left * right
-
-    def plus(self, left: acb, right: acb) -> acb:
-        return left + right
-
-    def minus(self, left: acb, right: acb) -> acb:
-        return left - right
 
     def quotient(self, upper: acb, lower: acb) -> acb:
         if lower.contains(acb(0)):

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from typing import Protocol, Self, TypeVar
+from typing import Generic, Protocol, TypeVar
 
 from flowgraph.diagram.expression import Expression
+from flowgraph.diagram.simulate import Operand
 
 R = TypeVar("R")
 
@@ -24,6 +25,22 @@ class Ring(Protocol[R]):
     def quotient(self, upper: R, lower: R) -> R: ...
 
 
+V = TypeVar("V", bound=Operand)
+
+
+class Operators(Generic[V]):
+    """Sums and products by the operators of the values themselves."""
+
+    def times(self, left: V, right: V) -> V:
+        return left * right
+
+    def plus(self, left: V, right: V) -> V:
+        return left + right
+
+    def minus(self, left: V, right: V) -> V:
+        return left - right
+
+
 class ExactRing(Ring[R], Protocol[R]):
     """A ring of polynomials in which nothing is left to chance."""
 
@@ -32,10 +49,7 @@ class ExactRing(Ring[R], Protocol[R]):
         ...
 
 
-class Polynomial(Protocol):
+class Polynomial(Operand, Protocol):
     """An element of an exact ring, whichever of the two it is."""
 
     def __len__(self) -> int: ...
-    def __add__(self, other: Self, /) -> Self: ...
-    def __sub__(self, other: Self, /) -> Self: ...
-    def __mul__(self, other: Self, /) -> Self: ...

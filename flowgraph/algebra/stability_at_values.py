@@ -10,6 +10,7 @@ from flowgraph.algebra.exact_rings import NumberPolynomials
 from flowgraph.algebra.modes import CELL_LIMIT, is_semisimple
 from flowgraph.algebra.numbers import numbered
 from flowgraph.algebra.rational_functions import symbolic_valuation
+from flowgraph.algebra.ring import Operators
 from flowgraph.algebra.solve import determinants
 from flowgraph.algebra.stability import Stability, stability_of_factors
 from flowgraph.algebra.states import cells_of, state_matrices
@@ -79,7 +80,7 @@ def _harmless(diagram: Diagram, repeated: fmpz_poly) -> bool:
     )
 
 
-class _BallRing:
+class _BallRing(Operators[arb]):
     """Certified real balls for sums and products of coefficients."""
 
     invertible = False
@@ -94,15 +95,6 @@ class _BallRing:
 
     def late(self, samples: int) -> arb:
         raise TypeError("cells are states here, not powers of w")
-
-    def times(self, left: arb, right: arb) -> arb:
-        return left * right
-
-    def plus(self, left: arb, right: arb) -> arb:
-        return left + right
-
-    def minus(self, left: arb, right: arb) -> arb:
-        return left - right
 
     def quotient(self, upper: arb, lower: arb) -> arb:
         return upper / lower

@@ -12,7 +12,7 @@ from flowgraph.claims.conditions import conditions
 from flowgraph.claims.equation import NotLinear, equation_diagram
 from flowgraph.claims.response import check_causal
 from flowgraph.claims.verdict import Verdict
-from flowgraph.claims.witness import search_witness, varying_names
+from flowgraph.claims.witness import Search, search_witness, varying_names
 from flowgraph.claims.wording import claim_text
 from flowgraph.diagram.claim import DiagramIntent, EquationIntent, Intent, RatioIntent
 from flowgraph.diagram.diagram import Coefficient, Diagram
@@ -106,7 +106,7 @@ def _not_equal(said: str, intent: Intent, question: _Question, comparison: Compa
     search = search_witness(question.left, question.right, comparison.differs_at, question.coefficients)
     method = "exact" if search.exact else "certified"
     if search.counterexample is None:
-        return Verdict(said, intent.span, "undecided", method, reason=_why_undecided(search.file_agrees))
+        return Verdict(said, intent.span, "undecided", method, reason=_why_undecided(search))
     reason = ""
     if search.file_agrees and search.exact:
         reason = f"holds for the numbers of the file only: make {_unnamed(question)} a const, or name it in the claim"
@@ -115,8 +115,13 @@ def _not_equal(said: str, intent: Intent, question: _Question, comparison: Compa
     return Verdict(said, intent.span, "refuted", method, counterexample=search.counterexample, reason=reason)
 
 
-def _why_undecided(file_agrees: bool) -> str:
-    if file_agrees:
+def _why_undecided(search: Search) -> str:
+    if search.cut_off:
+        return (
+            f"not equal as functions of z and the coefficients, but the first {search.cut_off} samples, where "
+            "the search for a witness ends, show no difference"
+        )
+    if search.file_agrees:
         return (
             "equal as far as 512 bits tell, but not as functions of the coefficients: each value of "
             "sqrt, sin, cos, tan, exp and pi is a free symbol in a proof"

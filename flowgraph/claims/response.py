@@ -18,17 +18,14 @@ from flowgraph.algebra.values import NoExactValueError, Values
 from flowgraph.diagram.diagram import Coefficient, Diagram
 from flowgraph.diagram.elements import Delay
 from flowgraph.diagram.expression import Expression, Name, Power, children
-from flowgraph.diagram.simulate import simulate
+from flowgraph.diagram.simulate import Operand, simulate
 
 BITS = 512
 
 
-class Quantity(Protocol):
+class Quantity(Operand, Protocol):
     """A fraction or a ball."""
 
-    def __add__(self, other: Self, /) -> Self: ...
-    def __sub__(self, other: Self, /) -> Self: ...
-    def __mul__(self, other: Self, /) -> Self: ...
     def __truediv__(self, other: Self, /) -> Self: ...
 
 

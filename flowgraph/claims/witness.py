@@ -28,11 +28,13 @@ class Search:
 
     `counterexample` is None when nothing was certainly different. `file_agrees` says that at the
     values of the file both sides were found equal, exactly when `exact`, else as far as balls tell.
+    `cut_off` is the number of samples looked at where that is too few to tell that, else 0.
     """
 
     counterexample: Counterexample | None
     file_agrees: bool
     exact: bool
+    cut_off: int = 0
 
 
 def search_witness(
@@ -42,7 +44,9 @@ def search_witness(
     expressions = [*left.expressions(), *right.expressions()]
     varying = varying_names(coefficients, expressions)
     open_names = [name for name in varying if name not in coefficients or coefficients[name].value is None]
-    samples = _enough_samples(left, right)
+    enough, affordable = _samples(left, right)
+    samples = min(enough, affordable)
+    cut_off = samples if samples < enough else 0
     exact, file_agrees = True, False
     choices = [] if open_names else [list[tuple[str, Fraction]]()]
     choices.extend(_chosen_values(varying, attempt) for attempt in range(TRIES if varying else 0))
@@ -55,9 +59,9 @@ def search_witness(
             continue  # these values are a pole of a coefficient: others are tried
         if found:
             said = tuple((name, str(value)) for name, value in chosen)
-            return Search(_counterexample(pair, found, said), file_agrees, exact)
-        file_agrees = file_agrees or not chosen
-    return Search(None, file_agrees, exact)
+            return Search(_counterexample(pair, found, said), file_agrees, exact, cut_off)
+        file_agrees = file_agrees or not (chosen or cut_off)
+    return Search(None, file_agrees, exact, cut_off)
 
 
 def varying_names(coefficients: Mapping[str, Coefficient], expressions: list[Expression]) -> list[str]:
@@ -111,8 +115,8 @@ def _counterexample(
     return Counterexample(pair[0], pair[1], sample, value, claimed, coefficients)
 
 
-def _enough_samples(left: Behaviour, right: Behaviour) -> int:
-    """One more than all cells of both sides decides equality (Cayley-Hamilton); the work is limited."""
+def _samples(left: Behaviour, right: Behaviour) -> tuple[int, int]:
+    """How many samples decide equality, one more than all cells (Cayley-Hamilton), and how many WORK_LIMIT allows."""
     cells, elements = 0, 1
     for behaviour in (left, right):
         match behaviour:
@@ -121,4 +125,4 @@ def _enough_samples(left: Behaviour, right: Behaviour) -> int:
                 elements += len(diagram.elements)
             case RatioBehaviour(ratio, late, _):
                 cells += late + powers_of_z(ratio)
-    return max(16, min(cells + 1, WORK_LIMIT // elements))
+    return max(16, cells + 1), max(16, WORK_LIMIT // elements)

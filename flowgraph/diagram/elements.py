@@ -96,6 +96,19 @@ def signals_read(element: Element) -> tuple[Signal, ...]:
             return (signal,)
 
 
+def expressions_of(element: Element) -> tuple[Expression, ...]:
+    """The expressions an element is made with, factors or starting contents, in the order written."""
+    match element:
+        case Input():
+            return ()
+        case Adder(terms=terms):
+            return tuple([term.coefficient for term in terms if term.coefficient is not None])
+        case Gain(coefficient=coefficient):
+            return (coefficient,)
+        case Delay(starts=starts):
+            return starts
+
+
 def redirected(element: Element, to: Mapping[Signal, Signal]) -> Element:
     """The element reading `to[signal]` in place of each signal that `to` has."""
     match element:

@@ -15,7 +15,7 @@ from flowgraph.diagram.expression import Expression
 from flowgraph.diagram.index import index, instant_order
 
 
-class Ring(Protocol):
+class Operand(Protocol):
     """Values that can be added, subtracted and multiplied."""
 
     def __add__(self, other: Self, /) -> Self: ...
@@ -23,7 +23,7 @@ class Ring(Protocol):
     def __mul__(self, other: Self, /) -> Self: ...
 
 
-T = TypeVar("T", bound=Ring)
+T = TypeVar("T", bound=Operand)
 
 
 def simulate(

@@ -6,6 +6,8 @@ from collections import deque
 from collections.abc import Iterable, Iterator, Sequence
 from itertools import islice
 
+from flowgraph.diagram.elements import Delay
+from flowgraph.diagram.expression import Number
 from flowgraph.diagram.index import Index, instant_order, strong_components
 
 
@@ -41,6 +43,11 @@ def unread_ends(view: Index, roots: Iterable[int]) -> list[int]:
         if all(reader in inside for member in group for reader in readers[member]):
             ends.append(unread[group[0]])
     return sorted(ends)
+
+
+def holds_something(delay: Delay) -> bool:
+    """Whether a delay starts with contents that are not plainly 0."""
+    return any(not (isinstance(start, Number) and start.value == 0) for start in delay.starts)
 
 
 MOST_LOOPS = 1000

@@ -14,7 +14,7 @@ from typing import TypeAlias
 
 from flowgraph.diagram.claim import Claim, DiagramIntent, EquationIntent, RatioIntent
 from flowgraph.diagram.diagram import Counts, Diagram, count, given_numbers
-from flowgraph.diagram.elements import Signal, with_expressions
+from flowgraph.diagram.elements import Signal, expressions_of, with_expressions
 from flowgraph.diagram.expression import Expression, names_in, substitute
 from flowgraph.passes.carried import Run, carried, whole_lines
 from flowgraph.passes.change import Change
@@ -26,7 +26,7 @@ from flowgraph.passes.fold_gains import fold_gains
 from flowgraph.passes.merge_equal import merge_equal
 from flowgraph.passes.proof import NotProved, Proof
 from flowgraph.passes.region import prove_regions
-from flowgraph.passes.well_formed import coefficients_of, faults_of_rewriting
+from flowgraph.passes.well_formed import faults_of_rewriting
 
 Pass: TypeAlias = Callable[[Diagram], Change | None]
 
@@ -170,7 +170,7 @@ def tidied(diagram: Diagram) -> Diagram:
 
 def _names_read(diagram: Diagram) -> set[str]:
     """Coefficients that elements or claims read, and all that those follow."""
-    used = [expression for element in diagram.elements.values() for expression in coefficients_of(element)]
+    used = [expression for element in diagram.elements.values() for expression in expressions_of(element)]
     for claim in diagram.claims:
         used.extend(_expressions(claim))
     read: set[str] = set()
@@ -191,7 +191,7 @@ def _expressions(claim: Claim) -> list[Expression]:
         case RatioIntent(ratio=ratio):
             return [ratio]
         case DiagramIntent(other=other, bindings=bindings):
-            made_with = [made for element in other.elements.values() for made in coefficients_of(element)]
+            made_with = [made for element in other.elements.values() for made in expressions_of(element)]
             followed = [found.value for found in other.coefficients.values() if found.value is not None]
             return [*(value for _, value in bindings), *made_with, *followed]
         case _:

@@ -5,8 +5,8 @@ from __future__ import annotations
 from itertools import groupby
 
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Signal, signals_read
-from flowgraph.diagram.expression import Expression, names_in
+from flowgraph.diagram.elements import Adder, Delay, Element, Signal, expressions_of, signals_read
+from flowgraph.diagram.expression import names_in
 from flowgraph.diagram.index import index, instant_order
 from flowgraph.passes.wording import counted
 
@@ -41,7 +41,7 @@ def _element_faults(diagram: Diagram, element: Element) -> list[str]:
         cells = counted(element.length, "cell")
         faults.append(f"the delay {element.name} has {counted(len(element.starts), 'content')} for {cells}")
     unknown = {
-        name for used, _ in groupby(coefficients_of(element)) for name in names_in(used)
+        name for used, _ in groupby(expressions_of(element)) for name in names_in(used)
     } - diagram.coefficients.keys()
     faults.extend(f"{element.name} reads the coefficient {name}, which is not there" for name in sorted(unknown))
     return faults
@@ -54,16 +54,3 @@ def _signal_faults(diagram: Diagram, reader: str, signal: Signal) -> list[str]:
     if isinstance(source, Delay):
         return [] if 1 <= signal.tap <= source.length else [f"{reader} reads cell {signal.tap} of {signal.name}"]
     return [] if signal.tap == 0 else [f"{reader} reads a cell of {signal.name}, which is no delay"]
-
-
-def coefficients_of(element: Element) -> tuple[Expression, ...]:
-    """The expressions an element is made with: factors and starting contents."""
-    match element:
-        case Adder(terms=terms):
-            return tuple(term.coefficient for term in terms if term.coefficient is not None)
-        case Delay(starts=starts):
-            return starts
-        case Gain(coefficient=coefficient):
-            return (coefficient,)
-        case Input():
-            return ()

@@ -4,10 +4,8 @@ from __future__ import annotations
 
 from flowgraph.diagram.claim import DiagramIntent, EquationIntent, RatioIntent
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Delay
-from flowgraph.diagram.expression import Number
 from flowgraph.diagram.index import Index
-from flowgraph.diagram.structure import spread
+from flowgraph.diagram.structure import holds_something, spread
 from flowgraph.source.diagnostic import Diagnostic
 from flowgraph.text.scope import Scope
 
@@ -25,7 +23,7 @@ def judge_coverage(scope: Scope, diagram: Diagram, view: Index, alive: set[str])
             known[source] = spread(view.reads, [view.number[source]])
         behind = known[source]
         inputs = [port.name for port in diagram.inputs() if behind[view.number[port.name]]]
-        held = [delay.name for delay in diagram.delays() if _holds(delay) and behind[view.number[delay.name]]]
+        held = [delay.name for delay in diagram.delays() if holds_something(delay) and behind[view.number[delay.name]]]
         missing = [name for name in inputs if (output.name, name) not in ratios]
         if held or (missing and len(missing) == len(inputs)):
             _tell_all(scope, output.name, held, bool(missing))
@@ -48,7 +46,3 @@ def _tell_all(scope: Scope, output: str, held: list[str], missing: bool) -> None
             "claim-missing", f"no intent for {output}{why}", scope.ports[output], help=f"add intent {output}[n] = .."
         )
     )
-
-
-def _holds(delay: Delay) -> bool:
-    return any(not (isinstance(start, Number) and start.value == 0) for start in delay.starts)

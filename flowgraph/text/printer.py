@@ -8,7 +8,7 @@ from itertools import chain
 
 from flowgraph.diagram.claim import DiagramIntent
 from flowgraph.diagram.diagram import Coefficient, Diagram
-from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Signal, signals_read
+from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input, Signal, expressions_of, signals_read
 from flowgraph.diagram.expression import Expression, Negative, Number, names_in
 from flowgraph.diagram.index import index
 from flowgraph.diagram.structure import unread_ends
@@ -125,7 +125,7 @@ def _coefficients_read(diagram: Diagram) -> set[str]:
     """The coefficients that elements read, directly or through others."""
     found: set[str] = set()
     waiting = [
-        name for element in diagram.elements.values() for factor in _factors(element) for name in names_in(factor)
+        name for element in diagram.elements.values() for factor in expressions_of(element) for name in names_in(factor)
     ]
     while waiting:
         name = waiting.pop()
@@ -135,18 +135,6 @@ def _coefficients_read(diagram: Diagram) -> set[str]:
         value = diagram.coefficients[name].value
         waiting.extend(() if value is None else names_in(value))
     return found
-
-
-def _factors(element: Element) -> tuple[Expression, ...]:
-    match element:
-        case Adder(terms=terms):
-            return tuple(term.coefficient for term in terms if term.coefficient is not None)
-        case Gain(coefficient=coefficient):
-            return (coefficient,)
-        case Delay(starts=starts):
-            return starts
-        case Input():
-            return ()
 
 
 def _ports(diagram: Diagram) -> Iterator[str]:

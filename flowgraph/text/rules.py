@@ -2,13 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
-
 from flowgraph.diagram.diagram import Diagram
-from flowgraph.diagram.elements import Adder, Delay, Element, Gain, Input
-from flowgraph.diagram.expression import Expression, Number, names_in
+from flowgraph.diagram.elements import Delay, Input, expressions_of
+from flowgraph.diagram.expression import Expression, names_in
 from flowgraph.diagram.index import Index, index
-from flowgraph.diagram.structure import spread, unread_ends
+from flowgraph.diagram.structure import holds_something, spread, unread_ends
 from flowgraph.source.diagnostic import Diagnostic
 from flowgraph.text import syntax as s
 from flowgraph.text.coverage import judge_coverage
@@ -131,19 +129,6 @@ def _tell_unread_name(scope: Scope, name: str) -> None:
     )
 
 
-def expressions_of(element: Element) -> Iterable[Expression]:
-    """The coefficient expressions of an element, starting contents included."""
-    match element:
-        case Adder(terms=terms):
-            return [term.coefficient for term in terms if term.coefficient is not None]
-        case Gain(coefficient=coefficient):
-            return [coefficient]
-        case Delay(starts=starts):
-            return starts
-        case Input():
-            return []
-
-
 def _judge_coefs(scope: Scope, diagram: Diagram, claim_reads: set[str]) -> None:
     """Every coefficient is read by the diagram; being read by a claim is not enough."""
     seen: set[int] = set()
@@ -210,8 +195,3 @@ def _judge_silence(scope: Scope, diagram: Diagram, view: Index) -> set[str]:
                 )
             )
     return alive
-
-
-def holds_something(delay: Delay) -> bool:
-    """Whether a delay starts with contents that are not plainly 0."""
-    return any(not (isinstance(start, Number) and start.value == 0) for start in delay.starts)

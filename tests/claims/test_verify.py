@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import pytest
 from read_diagram import read_diagram, read_diagrams
 
 from flowgraph.claims.verdict import Counterexample, Verdict
@@ -274,3 +275,21 @@ def test_a_claim_by_identity_test_states_its_bound() -> None:
     wrong = first(text + f"\nadder y = {total}\nintent y / x = {claim.replace('a7*', 'a8*')}\n}}")
     assert wrong.outcome == "refuted"
     assert wrong.counterexample is not None
+
+
+def test_a_difference_beyond_the_samples_looked_at_is_undecided_for_that_reason(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """Two long lines that differ by one cell: the search says where it ended, and nothing else."""
+    monkeypatch.setattr("flowgraph.claims.witness.WORK_LIMIT", 300)
+    text = """
+        diagram far {
+            input x
+            output y
+            delay line = x by 400
+            wire y = line[end]
+            intent y / x = z^-399
+        }"""
+    verdict = first(text)
+    assert verdict.outcome == "undecided"
+    assert "the first 100 samples, where the search for a witness ends, show no difference" in verdict.reason
